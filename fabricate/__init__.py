@@ -1,0 +1,1 @@
+"""The shop: jobs, materials, forming laws, moulds, turning, proofs and the command."""

@@ -1,0 +1,1 @@
+"""Formats: each module writes one and reads it back."""

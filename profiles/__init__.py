@@ -1,0 +1,1 @@
+"""Exact plane geometry: faces, meridians, offsets, arc paths, deviation, revolved meshes."""
