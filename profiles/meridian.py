@@ -1,0 +1,226 @@
+"""A curve of revolution's generating curve, exact: Chebyshev series in arc length.
+
+Terms: ``s`` is the arc length from the axis [mm], ``r`` the radius and ``z`` the height [mm], ``ψ`` the slope, the
+angle from the radius direction to the tangent [rad], ``κ = dψ/ds`` the meridional curvature [1/mm]. The *normal* points
+to the left of the direction of travel: towards the focus of a bowl that is walked from its vertex outwards.
+
+References
+----------
+Cesàro's intrinsic equation: a plane curve is known by its curvature as a function of its arc length (from memory).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from profiles.errors import GeometryError
+from profiles.face import Face
+from profiles.series import Series, constant, resolve
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True, eq=False)
+class Meridian:
+    """A plane curve with radius, height and slope as series in its own arc length.
+
+    Parameters
+    ----------
+    radius, height : Series
+        Coordinates over the arc length [mm].
+    slope : Series
+        Tangent angle over the arc length [rad].
+    """
+
+    radius: Series
+    height: Series
+    slope: Series
+
+    @classmethod
+    def of_face(cls, face: Face, length: float) -> Meridian:
+        """Return a face's meridian from the axis outwards (``dr/ds = cos ψ``).
+
+        Parameters
+        ----------
+        face : Face
+            The surface of revolution.
+        length : float
+            Arc length to follow it for [mm].
+
+        Returns
+        -------
+        Meridian
+            The curve from ``s = 0`` to ``s = length``.
+
+        Raises
+        ------
+        GeometryError
+            If the face ends before that length.
+        """
+        # A tangent is never steeper than the path is long, so the radius stays under the length.
+        reach = min(length, 0.999999 * face.widest)
+        run = _arc_length_over_radius(face, reach)
+        if float(run(reach)) < length:
+            raise GeometryError(
+                f"the face ends {float(run(reach)):.6g} mm along its meridian, before the {length:.6g} mm that "
+                "rim and trim need: ask for a smaller rim or trim, or a longer focal length"
+            )
+        edge = float(run.solve(length))
+        return _by_arc_length(
+            lambda radius: np.stack([radius, face.height(radius), np.arctan(face.incline(radius))]),
+            _arc_length_over_radius(face, edge),
+        )
+
+    @classmethod
+    def of_curvature(cls, curvature: Series, *, slope: float = 0.0, radius: float = 0.0) -> Meridian:
+        """Return the curve that has a given curvature (Cesàro), from height 0.
+
+        Parameters
+        ----------
+        curvature : Series
+            κ over the arc length [1/mm].
+        slope : float
+            Slope at the start [rad].
+        radius : float
+            Radius at the start [mm].
+
+        Returns
+        -------
+        Meridian
+            ``ψ = ∫κ ds``, ``r = ∫cos ψ ds``, ``z = ∫sin ψ ds``.
+        """
+        angle = curvature.integral(value=slope)
+        across, up = resolve(
+            lambda where: np.stack([np.cos(angle(where)), np.sin(angle(where))]), angle.breaks, sizes=[1.0, 1.0]
+        )
+        return cls(across.integral(value=radius), up.integral(), angle)
+
+    @property
+    def start(self) -> float:
+        """Arc length at the inner end [mm]."""
+        return self.slope.start
+
+    @property
+    def end(self) -> float:
+        """Arc length at the outer end [mm]."""
+        return self.slope.end
+
+    @cached_property
+    def breaks(self) -> Array:
+        """Arc lengths between which the curve is smooth [mm]."""
+        return np.unique(np.concatenate([self.radius.breaks, self.slope.breaks]))
+
+    @cached_property
+    def curvature(self) -> Series:
+        """Meridional curvature over the arc length [1/mm]."""
+        return self.slope.derivative()
+
+    def points(self, where: ArrayLike) -> Array:
+        """Return points (radius, height) [mm] at arc lengths [mm], shape (…, 2)."""
+        return np.stack([self.radius(where), self.height(where)], axis=-1)
+
+    def tangents(self, where: ArrayLike) -> Array:
+        """Return unit tangents at arc lengths [mm], shape (…, 2)."""
+        slope = self.slope(where)
+        return np.stack([np.cos(slope), np.sin(slope)], axis=-1)
+
+    def normals(self, where: ArrayLike) -> Array:
+        """Return unit normals to the left of the curve at arc lengths [mm], shape (…, 2)."""
+        slope = self.slope(where)
+        return np.stack([-np.sin(slope), np.cos(slope)], axis=-1)
+
+    def at_radius(self, radius: ArrayLike) -> Array:
+        """Return the arc length [mm] at which the curve reaches a radius [mm]."""
+        return self.radius.solve(radius)
+
+    def part(self, start: float, end: float) -> Meridian:
+        """Return the stretch between two arc lengths [mm], which keeps its arc lengths."""
+        inner = self.breaks[(self.breaks > start) & (self.breaks < end)]
+        return Meridian(*resolve(self._values, [start, *inner, end], sizes=self._sizes))
+
+    def scaled(self, factor: float) -> Meridian:
+        """Return the curve enlarged about the origin by a positive factor [-]; its arc length grows alike."""
+        breaks = self.breaks * factor
+
+        def values(where: Array) -> Array:
+            return self._values(where / factor) * np.array([[factor], [factor], [1.0]])
+
+        return Meridian(*resolve(values, breaks, sizes=self._sizes * np.array([factor, factor, 1.0])))
+
+    def raised(self, height: float) -> Meridian:
+        """Return the curve shifted along the axis [mm]."""
+        return Meridian(self.radius, Series(tuple(piece + height for piece in self.height.pieces)), self.slope)
+
+    def offset(self, distance: float | Series) -> Meridian:
+        """Return the curve at a distance along the normal.
+
+        Parameters
+        ----------
+        distance : float or Series
+            How far to the left of the curve (towards the focus of a bowl) each point moves [mm]; negative to the
+            right. A series is a distance over the arc length.
+
+        Returns
+        -------
+        Meridian
+            ``P + δ n`` by its own arc length.
+
+        Raises
+        ------
+        GeometryError
+            If the offset reaches a centre of curvature of the curve or of its parallel circle, so that it folds.
+        """
+        shift = distance if isinstance(distance, Series) else constant(distance, self.start, self.end)
+        change = shift.derivative()
+        breaks = np.unique(np.concatenate([self.breaks, shift.breaks]))
+        self._check_fold(shift, breaks)
+
+        def speed(where: Array) -> Array:
+            return np.hypot(1.0 - self.curvature(where) * shift(where), change(where))
+
+        def values(where: Array) -> Array:
+            radius, height, slope = self._values(where)
+            lean = np.arctan2(change(where), 1.0 - self.curvature(where) * shift(where))
+            return np.stack(
+                [radius - shift(where) * np.sin(slope), height + shift(where) * np.cos(slope), slope + lean]
+            )
+
+        (rate,) = resolve(lambda where: speed(where)[None], breaks, sizes=[1.0])
+        return _by_arc_length(values, rate.integral(value=self.start))
+
+    def _check_fold(self, shift: Series, breaks: Array) -> None:
+        (room,) = resolve(lambda where: (1.0 - self.curvature(where) * shift(where))[None], breaks, sizes=[1.0])
+        where, least = room.smallest()
+        if least <= 1e-9:
+            raise GeometryError(
+                f"an offset of {abs(float(shift(where))):.6g} mm at radius {float(self.radius(where)):.6g} mm is not "
+                f"smaller than the radius of curvature there, {1.0 / abs(float(self.curvature(where))):.6g} mm, "
+                "and folds the curve: use a thinner sheet or cover, or put the other face on the mould"
+            )
+
+    @property
+    def _sizes(self) -> Array:
+        size = float(np.abs(self.points(self.breaks)).max()) + (self.end - self.start)
+        return np.array([size, size, 1.0])
+
+    def _values(self, where: Array) -> Array:
+        return np.stack([self.radius(where), self.height(where), self.slope(where)])
+
+
+def _arc_length_over_radius(face: Face, reach: float) -> Series:
+    """Return a face's arc length as a function of the radius, ``∫ sqrt(1 + z'²) dr``."""
+    (speed,) = resolve(lambda radius: np.hypot(1.0, face.incline(radius))[None], [0.0, reach], sizes=[1.0])
+    return speed.integral()
+
+
+def _by_arc_length(values: Callable[[Array], Array], run: Series) -> Meridian:
+    """Return the curve whose radius, height and slope are functions of a parameter over which its arc length runs."""
+    breaks = run(run.breaks)
+    sizes = np.abs(values(run.breaks)).max(axis=1)
+    size = float(sizes[:2].max())
+    return Meridian(*resolve(lambda where: values(run.solve(where)), breaks, sizes=[size, size, 1.0]))
