@@ -14,6 +14,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -138,6 +139,18 @@ class Meridian:
         """Return the arc length [mm] at which the curve reaches a radius [mm]."""
         return self.radius.solve(radius)
 
+    def nearest(self, points: Array) -> Array:
+        """Return the arc lengths [mm] of the curve's points nearest to given points (n, 2) [mm]."""
+        grid = np.concatenate([np.linspace(start, end, 65) for start, end in pairwise(self.breaks.tolist())])
+        near = self.points(grid)
+        where = np.array([grid[np.argmin(np.hypot(*(near - point).T))] for point in points])
+        for _ in range(6):
+            gap = self.points(where) - points
+            along = (gap * self.tangents(where)).sum(axis=1)
+            bend = 1.0 + self.curvature(where) * (gap * self.normals(where)).sum(axis=1)
+            where = np.clip(where - along / np.maximum(bend, 0.1), self.start, self.end)
+        return np.asarray(where)
+
     def part(self, start: float, end: float) -> Meridian:
         """Return the stretch between two arc lengths [mm], which keeps its arc lengths."""
         inner = self.breaks[(self.breaks > start) & (self.breaks < end)]
@@ -148,7 +161,7 @@ class Meridian:
         breaks = self.breaks * factor
 
         def values(where: Array) -> Array:
-            return self._values(where / factor) * np.array([[factor], [factor], [1.0]])
+            return np.asarray(self._values(where / factor) * np.array([[factor], [factor], [1.0]]))
 
         return Meridian(*resolve(values, breaks, sizes=self._sizes * np.array([factor, factor, 1.0])))
 
