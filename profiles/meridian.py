@@ -21,7 +21,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from profiles.errors import GeometryError
 from profiles.face import Face
-from profiles.series import Series, constant, resolve
+from profiles.series import Series, constant, merged_breaks, resolve
 
 Array = NDArray[np.float64]
 
@@ -114,7 +114,7 @@ class Meridian:
     @cached_property
     def breaks(self) -> Array:
         """Arc lengths between which the curve is smooth [mm]."""
-        return np.unique(np.concatenate([self.radius.breaks, self.slope.breaks]))
+        return merged_breaks(self.radius.breaks, self.slope.breaks, start=self.start, end=self.end)
 
     @cached_property
     def curvature(self) -> Series:
@@ -153,8 +153,8 @@ class Meridian:
 
     def part(self, start: float, end: float) -> Meridian:
         """Return the stretch between two arc lengths [mm], which keeps its arc lengths."""
-        inner = self.breaks[(self.breaks > start) & (self.breaks < end)]
-        return Meridian(*resolve(self._values, [start, *inner, end], sizes=self._sizes))
+        breaks = merged_breaks(self.breaks, start=start, end=end)
+        return Meridian(*resolve(self._values, breaks, sizes=self._sizes))
 
     def scaled(self, factor: float) -> Meridian:
         """Return the curve enlarged about the origin by a positive factor [-]; its arc length grows alike."""
@@ -190,7 +190,7 @@ class Meridian:
         """
         shift = distance if isinstance(distance, Series) else constant(distance, self.start, self.end)
         change = shift.derivative()
-        breaks = np.unique(np.concatenate([self.breaks, shift.breaks]))
+        breaks = merged_breaks(self.breaks, shift.breaks, start=self.start, end=self.end)
         self._check_fold(shift, breaks)
 
         def speed(where: Array) -> Array:

@@ -148,6 +148,15 @@ def real_roots(piece: Chebyshev) -> Array:
     return np.asarray(np.clip(real[(real > start - 1e-9 * width) & (real < end + 1e-9 * width)], start, end))
 
 
+def merged_breaks(*breaks: Array, start: float, end: float) -> Array:
+    """Return the breaks of several functions on an interval as one row, those that rounding alone sets apart as one."""
+    inner = np.unique(np.concatenate(breaks))
+    least = 1e-9 * (end - start)
+    inner = inner[(inner > start + least) & (inner < end - least)]
+    apart = np.diff(inner, prepend=start) > least
+    return np.array([start, *inner[apart], end])
+
+
 def constant(value: float, start: float, end: float) -> Series:
     """Return the function that has one value on an interval."""
     return Series((Chebyshev([value], domain=[start, end]),))
