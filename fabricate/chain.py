@@ -1,0 +1,259 @@
+"""The one place that puts the maps between part and mould in order, both ways.
+
+``mould = shrink⁻¹( offset( springback⁻¹( reflecting face ) ) )``
+
+The reflecting face goes first to its shape on the mould at equal arc length (springback inverted), then along its
+normal through coating, sheet and cover to the forming surface, and is then enlarged by what the part will shrink.
+Distances along the normal count towards the focus. Lengths are millimetres.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+
+from fabricate.job_keys import Job
+from fabricate.mould import Kind, Mould, mould_around
+from fabricate.springback import CurvatureMap, ReleasedFace, springback_map
+from fabricate.thinning import FormedSheet, thickness_on_mould
+from profiles.errors import GeometryError, JobError
+from profiles.face import Face
+from profiles.meridian import Meridian
+from profiles.series import Series, merged_breaks, resolve
+
+ROUNDS = 30
+SETTLED = 1e-12
+
+
+@dataclass(frozen=True, eq=False)
+class Chain:
+    """The maps from a part's reflecting face to its mould and back, for one job.
+
+    Parameters
+    ----------
+    job : Job
+        The job, in millimetres.
+    """
+
+    job: Job
+
+    @property
+    def kind(self) -> Kind:
+        """Male where the sheet's concave face lies on the mould, else female."""
+        return "male" if self.job.forming.contact_face == "concave" else "female"
+
+    @cached_property
+    def released(self) -> ReleasedFace:
+        """The reflecting face of the finished part as the job states it, with its trim."""
+        reflector = self.job.reflector
+        face = Face(reflector.focal_length, reflector.conic_constant, reflector.asphere)
+        rim = rim_arc_length(face, 0.5 * reflector.rim_diameter)
+        return ReleasedFace(face, Meridian.of_face(face, rim + self.job.forming.trim_allowance), rim)
+
+    @cached_property
+    def springback(self) -> CurvatureMap:
+        """What the reflecting face's curvature does on release."""
+        return springback_map(self.released, self.job.forming.springback)
+
+    @cached_property
+    def on_mould(self) -> Meridian:
+        """The reflecting face as it lies on the mould, before the part has shrunk away from it."""
+        return self.springback.load(self.released.meridian)
+
+    @cached_property
+    def thickness(self) -> Series:
+        """Thickness of the formed sheet over the arc length [mm]."""
+        return self._thickness(self.on_mould)
+
+    @cached_property
+    def shift(self) -> Series:
+        """From the reflecting face to the forming surface, along the normal, towards the focus positive [mm]."""
+        return self._shift(self.on_mould)
+
+    @property
+    def enlargement(self) -> float:
+        """Size of the cold mould over that of the cold part [-]: ``1/(1 − S)``, hot-mould S also over ``1 + αΔT``."""
+        shrinkage = self.job.forming.shrinkage
+        factor = 1.0 / (1.0 - 0.01 * shrinkage.percent)
+        if shrinkage.reference == "hot-mould":
+            factor /= 1.0 + (shrinkage.mould_expansion or 0.0) * (shrinkage.temperature_rise or 0.0)
+        return factor
+
+    @cached_property
+    def forming_surface(self) -> Meridian:
+        """The exact mould curve in the mould frame, from the axis to the end of the trim."""
+        return _on_its_vertex(self.to_mould(self.released.meridian))
+
+    @cached_property
+    def mould(self) -> Mould:
+        """The mould around the forming surface.
+
+        Raises
+        ------
+        JobError
+            If the part would lock on the mould, or the mould's body does not fit.
+        """
+        _check_release(self.forming_surface)
+        return mould_around(self.forming_surface, self.kind, self.job.mould)
+
+    @property
+    def vertex_gap(self) -> float:
+        """Height of the reflecting face's vertex over the mould's vertex, while it lies on the mould [mm]."""
+        return -self.enlargement * float(self.shift(self.shift.start))
+
+    def mould_radius_at(self, arc_length: float) -> float:
+        """Return the radius on the mould of a material point, given by its arc length on the reflecting face [mm]."""
+        slope = float(self.on_mould.slope(arc_length))
+        return self.enlargement * float(self.on_mould.radius(arc_length) - self.shift(arc_length) * np.sin(slope))
+
+    def to_mould(self, part: Meridian) -> Meridian:
+        """Return the forming surface that makes a released reflecting face.
+
+        Parameters
+        ----------
+        part : Meridian
+            The released face from the axis outwards [mm].
+
+        Returns
+        -------
+        Meridian
+            The forming surface, cold [mm].
+
+        Raises
+        ------
+        GeometryError
+            If the offset folds.
+        """
+        on_mould = self.springback.load(part)
+        return on_mould.offset(self._shift(on_mould)).scaled(self.enlargement)
+
+    def to_part(self, mould: Meridian) -> Meridian:
+        """Return the released reflecting face that a forming surface makes.
+
+        Parameters
+        ----------
+        mould : Meridian
+            The forming surface from the axis outwards, cold [mm].
+
+        Returns
+        -------
+        Meridian
+            The released face, its vertex at height 0 [mm].
+
+        Raises
+        ------
+        GeometryError
+            If the thickness does not settle, or the offset folds.
+        """
+        contact = mould.scaled(1.0 / self.enlargement)
+        return _on_its_vertex(self.springback.release(self._reflecting_face_over(contact)))
+
+    def _reflecting_face_over(self, contact: Meridian) -> Meridian:
+        """Return the reflecting face over a forming surface: its own offset, as thick as it makes the sheet itself."""
+        face = contact.offset(_negative(self._shift(contact)))
+        for _ in range(ROUNDS):
+            shift = self._shift(face)
+            gap, overrun = _gap_to(contact, face, shift)
+            face = face.offset(gap)
+            face = face.part(face.start, face.end - overrun)
+            if max(abs(gap.largest()[1]), abs(gap.smallest()[1]), abs(overrun)) < SETTLED * contact.end:
+                return face
+        raise GeometryError(
+            "the sheet's thickness over this mould does not settle: state it by a table (forming.thinning.law = "
+            '"stations")'
+        )
+
+    def _thickness(self, on_mould: Meridian) -> Series:
+        sheet = FormedSheet(on_mould, self.released.meridian, self.job.sheet.thickness)
+        return thickness_on_mould(sheet, self.job.forming.thinning)
+
+    def _shift(self, on_mould: Meridian) -> Series:
+        job = self.job
+        reflecting_inside = job.reflector.reflecting_face == "concave"
+        contact_inside = job.forming.contact_face == "concave"
+        coating = -job.sheet.coating_thickness if reflecting_inside else job.sheet.coating_thickness
+        cover = job.mould.cover_thickness if contact_inside else -job.mould.cover_thickness
+        through = float(contact_inside) - float(reflecting_inside)
+        thickness = self._thickness(on_mould)
+        return Series(tuple(through * piece + (coating + cover) for piece in thickness.pieces))
+
+
+def rim_arc_length(face: Face, radius: float) -> float:
+    """Return the arc length of a face's meridian from the axis to a radius, ``∫ sqrt(1 + z'²) dr`` [mm].
+
+    Parameters
+    ----------
+    face : Face
+        The face.
+    radius : float
+        Radius of the rim [mm].
+
+    Returns
+    -------
+    float
+        Arc length [mm].
+
+    Raises
+    ------
+    GeometryError
+        If the face ends before that radius.
+
+    Examples
+    --------
+    For ``R = 2 f``, ``f (√2 + asinh 1)``:
+
+    >>> round(rim_arc_length(Face(1.0), 2.0), 9)
+    2.295587149
+    """
+    (speed,) = resolve(lambda where: np.hypot(1.0, face.incline(where))[None], [0.0, radius], sizes=[1.0])
+    return float(speed.integral()(radius))
+
+
+def _on_its_vertex(curve: Meridian) -> Meridian:
+    return curve.raised(-float(curve.height(curve.start)))
+
+
+def _negative(series: Series) -> Series:
+    return Series(tuple(-piece for piece in series.pieces))
+
+
+def _gap_to(contact: Meridian, face: Meridian, shift: Series) -> tuple[Series, float]:
+    """Return how far a face's own forming surface lies under the wanted one, and how far past its end [mm]."""
+    breaks = merged_breaks(face.breaks, shift.breaks, start=face.start, end=face.end)
+
+    def reached(where: np.ndarray) -> np.ndarray:
+        return np.asarray(face.points(where) + shift(where)[..., None] * face.normals(where))
+
+    def gap(where: np.ndarray) -> np.ndarray:
+        points = reached(where)
+        foot = contact.nearest(points)
+        return np.asarray(((contact.points(foot) - points) * contact.normals(foot)).sum(axis=1))
+
+    (series,) = resolve(lambda where: gap(where)[None], breaks, sizes=[contact.end])
+    end = np.array([face.end])
+    last = np.array([contact.end])
+    overrun = float(((reached(end) - contact.points(last)) * contact.tangents(last)).sum())
+    return series, overrun
+
+
+def _check_release(surface: Meridian) -> None:
+    """Refuse a forming surface whose slope leaves 0 to 90 degrees: the part would lock on it."""
+    low, least = surface.slope.smallest()
+    high, most = surface.slope.largest()
+    if least < -1e-9 or most >= 0.5 * np.pi:
+        where = low if least < -1e-9 else high
+        radius = _turning_radius(surface) if least < -1e-9 else float(surface.radius(where))
+        raise JobError(
+            f"forming.springback: the mould is re-entrant: its slope turns at radius {radius:.6g} mm and is "
+            f"{np.degrees(least if least < -1e-9 else most):.4g} degrees at {float(surface.radius(where)):.6g} mm; "
+            "allowed: a slope from 0 up to but not 90 degrees all the way; do: check the springback stations and the "
+            "asphere, or the part locks on"
+        )
+
+
+def _turning_radius(surface: Meridian) -> float:
+    """Return the radius at which the slope first falls under 0 [mm]."""
+    where = np.linspace(surface.start, surface.end, 20001)
+    return float(surface.radius(where[int(np.argmax(surface.slope(where) < -1e-9))]))

@@ -1,0 +1,130 @@
+"""Laws of thinning: how thick the formed sheet is along the meridian.
+
+A law takes the reflecting face as it lies on the mould and returns the thickness over its arc length. A new law is
+one function here and one row in :data:`LAWS`.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fabricate.job_keys import Thinning
+from fabricate.springback import arc_lengths_at, table_over_radius
+from profiles.errors import JobError
+from profiles.meridian import Meridian
+from profiles.series import Series, constant, merged_breaks, resolve
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True, eq=False)
+class FormedSheet:
+    """What a thinning law may look at.
+
+    Parameters
+    ----------
+    on_mould : Meridian
+        The reflecting face as it lies on the mould, from the axis to the end of the forming surface [mm].
+    released : Meridian
+        The same face released, at equal arc length [mm].
+    thickness : float
+        Thickness of the sheet before forming [mm].
+    """
+
+    on_mould: Meridian
+    released: Meridian
+    thickness: float
+
+
+Law = Callable[[FormedSheet, Thinning], Series]
+
+
+def no_thinning(sheet: FormedSheet, _stated: Thinning) -> Series:
+    """Return the sheet's own thickness everywhere [mm]: conventional spinning, to first order."""
+    return constant(sheet.thickness, sheet.on_mould.start, sheet.on_mould.end)
+
+
+def sine_law(sheet: FormedSheet, _stated: Thinning) -> Series:
+    """Return ``t = t0 cos ψ`` [mm]: shear spinning, and a sheet draped while its free part stays a tangent cone.
+
+    References
+    ----------
+    Wong, Dean & Lin, Int. J. Mach. Tools Manuf. 43 (2003) 1419-1435, for the sine law (seen in a public copy).
+    """
+    curve = sheet.on_mould
+    (thickness,) = resolve(
+        lambda where: sheet.thickness * np.cos(curve.slope(where))[None], curve.breaks, sizes=[sheet.thickness]
+    )
+    return thickness
+
+
+def straight_vacuum(sheet: FormedSheet, _stated: Thinning) -> Series:
+    """Return the thickness of a sheet drawn into a cavity from the rim inwards [mm].
+
+    ``t = t0 (1 + cos ψ)/2 · exp(−∫ (1 − cos ψ)/r ds)``, the integral from the place to the end of the forming surface.
+
+    Notes
+    -----
+    Geometric element analysis with a spherical free cap of area ``A = 2π r²/(1 + cos ψ)``:
+    ``d(ln t)/dr = (2π r / cos ψ − A')/A`` with ``t = t0 (1 + cos ψ)/2`` at the start. The part of ``A'`` that comes
+    from the slope integrates to ``ln(1 + cos ψ)``; what remains is ``(1 − cos ψ)/r`` over the arc length.
+
+    References
+    ----------
+    UC Berkeley MAS 2.0, "Thermoforming: theoretical considerations", for the cone (seen in a public copy).
+    """
+    curve = sheet.on_mould
+
+    def rate(where: Array) -> Array:
+        slope, radius = curve.slope(where), curve.radius(where)
+        return np.asarray(2.0 * np.sin(0.5 * slope) ** 2 / np.maximum(radius, 1e-300))
+
+    sizes = [10.0 / (curve.end - curve.start)]
+    (loss,) = resolve(lambda where: rate(where)[None], curve.breaks, sizes=sizes)
+    running = loss.integral()
+    whole = float(running(curve.end))
+    (thickness,) = resolve(
+        lambda where: (0.5 * sheet.thickness * (1.0 + np.cos(curve.slope(where))) * np.exp(running(where) - whole))[
+            None
+        ],
+        curve.breaks,
+        sizes=[sheet.thickness],
+    )
+    return thickness
+
+
+def stations(sheet: FormedSheet, stated: Thinning) -> Series:
+    """Return a measured table of radius on the finished face and thickness [mm], PCHIP between its rows."""
+    rows = np.array(stated.stations)
+    table = table_over_radius(rows[:, 0], rows[:, 1])
+    curve = sheet.on_mould
+    breaks = merged_breaks(curve.breaks, arc_lengths_at(sheet.released, rows[:, 0]), start=curve.start, end=curve.end)
+    (thickness,) = resolve(lambda where: table(sheet.released.radius(where))[None], breaks, sizes=[sheet.thickness])
+    return thickness
+
+
+LAWS: Mapping[str, Law] = {
+    "none": no_thinning,
+    "sine-law": sine_law,
+    "straight-vacuum": straight_vacuum,
+    "stations": stations,
+}
+
+
+def thickness_on_mould(sheet: FormedSheet, stated: Thinning) -> Series:
+    """Return the formed sheet's thickness over the arc length of the reflecting face on the mould [mm].
+
+    Raises
+    ------
+    JobError
+        If the law is not built in.
+    """
+    if stated.law not in LAWS:
+        raise JobError(
+            f'forming.thinning.law: value is "{stated.law}"; allowed: {", ".join(LAWS)}; do: state one of these'
+        )
+    return LAWS[stated.law](sheet, stated)
