@@ -152,8 +152,8 @@ class Meridian:
         return np.asarray(where)
 
     def part(self, start: float, end: float) -> Meridian:
-        """Return the stretch between two arc lengths [mm], which keeps its arc lengths."""
-        breaks = merged_breaks(self.breaks, start=start, end=end)
+        """Return the stretch between two arc lengths [mm], which keeps them; a little beyond the ends it goes on."""
+        breaks = merged_breaks(self.breaks[1:-1], start=start, end=end)
         return Meridian(*resolve(self._values, breaks, sizes=self._sizes))
 
     def scaled(self, factor: float) -> Meridian:

@@ -29,8 +29,12 @@ Array = NDArray[np.float64]
 RESOLUTION = 2e-14
 """Coefficients below this part of a function's size are rounding."""
 
+NOISE = 1e-11
+"""Coefficients below this part of a function's size that no longer fall are taken for its own noise."""
+
 DEGREES = (16, 32, 64)
 HALVINGS = 24
+MOST_PIECES = 2000
 
 
 @dataclass(frozen=True, eq=False)
@@ -186,35 +190,39 @@ def resolve(function: Callable[[Array], Array], breaks: ArrayLike, *, sizes: Arr
     """
     breaks = np.asarray(breaks, dtype=np.float64)
     sizes = np.asarray(sizes, dtype=np.float64)[:, None]
-    pieces = [
-        piece
-        for start, end in pairwise(breaks.tolist())
-        for piece in _resolve_piece(function, start, end, sizes, HALVINGS)
-    ]
+    least = (breaks[-1] - breaks[0]) * 0.5**HALVINGS
+    pieces: list[tuple[float, float, Array]] = []
+    waiting = list(pairwise(breaks.tolist()))[::-1]
+    while waiting:
+        start, end = waiting.pop()
+        coefficients = _resolved(function, start, end, sizes)
+        if coefficients is not None:
+            pieces.append((start, end, coefficients))
+            continue
+        middle = 0.5 * (start + end)
+        if end - start < least or len(pieces) + len(waiting) > MOST_PIECES:
+            raise GeometryError(
+                f"the curve is not smooth near {middle:.6g} mm along it, so it can't be followed exactly: "
+                "ask for a gentler face, springback table or thickness table"
+            )
+        waiting += [(middle, end), (start, middle)]
     return tuple(
         Series(tuple(Chebyshev(coefficients[row], domain=[start, end]) for start, end, coefficients in pieces))
         for row in range(len(sizes))
     )
 
 
-def _resolve_piece(
-    function: Callable[[Array], Array], start: float, end: float, sizes: Array, halvings: int
-) -> list[tuple[float, float, Array]]:
+def _resolved(function: Callable[[Array], Array], start: float, end: float, sizes: Array) -> Array | None:
+    """Return the coefficients that hold the functions on an interval to rounding, or None where it is too long."""
     for degree in DEGREES:
         coefficients = interpolate(function, start, end, degree)
         if (np.abs(coefficients[:, -3:]) <= RESOLUTION * sizes).all():
-            return [(start, end, _shortened(coefficients, sizes))]
-    middle = 0.5 * (start + end)
-    if not halvings or not start < middle < end:
-        raise GeometryError(
-            f"the curve is not smooth near {middle:.6g} mm along it, so it can't be followed exactly: "
-            "ask for a gentler face, springback table or thickness table"
-        )
-    return [
-        piece
-        for low, high in ((start, middle), (middle, end))
-        for piece in _resolve_piece(function, low, high, sizes, halvings - 1)
-    ]
+            return _shortened(coefficients, 0.01 * RESOLUTION * sizes)
+    floor = 2.0 * np.abs(coefficients[:, -16:]).max(axis=1, keepdims=True)
+    level = np.abs(coefficients[:, 24:40]).max(axis=1, keepdims=True) <= 8.0 * floor
+    if ((floor <= RESOLUTION * sizes) | (level & (floor <= NOISE * sizes))).all():
+        return _shortened(coefficients, np.maximum(floor, 0.01 * RESOLUTION * sizes))
+    return None
 
 
 def interpolate(function: Callable[[Array], Array], start: float, end: float, degree: int) -> Array:
@@ -256,8 +264,8 @@ def _transform(degree: int) -> tuple[Array, Array]:
     return nodes, basis * weights
 
 
-def _shortened(coefficients: Array, sizes: Array) -> Array:
-    """Return the coefficients without a tail that is mere rounding of every function."""
-    large = (np.abs(coefficients) > 0.01 * RESOLUTION * sizes).any(axis=0)
+def _shortened(coefficients: Array, noise: Array) -> Array:
+    """Return the coefficients without a tail that is mere noise of every function; ``noise`` has shape (k, 1)."""
+    large = (np.abs(coefficients) > noise).any(axis=0)
     count = int(np.flatnonzero(large)[-1]) + 1 if large.any() else 1
     return coefficients[:, :count]
