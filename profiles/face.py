@@ -64,6 +64,27 @@ class Face:
         opening = 1.0 + self.conic_constant
         return self.vertex_radius / float(np.sqrt(opening)) if opening > 0.0 else np.inf
 
+    @property
+    def closed(self) -> bool:
+        """Whether the conic closes, as a sphere does."""
+        return bool(np.isfinite(self.widest))
+
+    def aperture(self, radius: float) -> float:
+        """Return the aperture up to a radius [mm]: the radius itself, or where the conic closes ``W asin(r/W)``.
+
+        The face is a smooth function of its aperture right up to where it closes; of the radius it is not. Radii past
+        0.9999 of the widest are cut off there.
+        """
+        return self.widest * float(np.arcsin(min(radius / self.widest, 0.9999))) if self.closed else radius
+
+    def radius_at(self, aperture: Array) -> Array:
+        """Return the radius [mm] at an aperture [mm]."""
+        return np.asarray(self.widest * np.sin(aperture / self.widest)) if self.closed else aperture
+
+    def radius_rate(self, aperture: Array) -> Array:
+        """Return the radius' derivative by the aperture [-]."""
+        return np.cos(aperture / self.widest) if self.closed else np.ones_like(aperture)
+
     def _root(self, radius: Array) -> Array:
         inside = 1.0 - (1.0 + self.conic_constant) * (radius / self.vertex_radius) ** 2
         if (inside <= 0.0).any():

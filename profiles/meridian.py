@@ -63,19 +63,19 @@ class Meridian:
         GeometryError
             If the face ends before that length.
         """
-        # A tangent is never steeper than the path is long, so the radius stays under the length.
-        reach = min(length, 0.999999 * face.widest)
-        run = _arc_length_over_radius(face, reach)
-        if float(run(reach)) < length:
+        # No curve is shorter than its radius, so the whole stretch lies within a radius of its length.
+        run = arc_length_over_aperture(face, face.aperture(length))
+        if float(run(run.end)) < length:
             raise GeometryError(
-                f"the face ends {float(run(reach)):.6g} mm along its meridian, before the {length:.6g} mm that "
+                f"the face ends {float(run(run.end)):.6g} mm along its meridian, before the {length:.6g} mm that "
                 "rim and trim need: ask for a smaller rim or trim, or a longer focal length"
             )
-        edge = float(run.solve(length))
-        return _by_arc_length(
-            lambda radius: np.stack([radius, face.height(radius), np.arctan(face.incline(radius))]),
-            _arc_length_over_radius(face, edge),
-        )
+
+        def values(aperture: Array) -> Array:
+            radius = face.radius_at(aperture)
+            return np.stack([radius, face.height(radius), np.arctan(face.incline(radius))])
+
+        return _by_arc_length(values, arc_length_over_aperture(face, float(run.solve(length))))
 
     @classmethod
     def of_curvature(cls, curvature: Series, *, slope: float = 0.0, radius: float = 0.0) -> Meridian:
@@ -225,10 +225,27 @@ class Meridian:
         return np.stack([self.radius(where), self.height(where), self.slope(where)])
 
 
-def _arc_length_over_radius(face: Face, reach: float) -> Series:
-    """Return a face's arc length as a function of the radius, ``∫ sqrt(1 + z'²) dr``."""
-    (speed,) = resolve(lambda radius: np.hypot(1.0, face.incline(radius))[None], [0.0, reach], sizes=[1.0])
-    return speed.integral()
+def arc_length_over_aperture(face: Face, end: float) -> Series:
+    """Return a face's arc length from the axis as a function of its aperture, ``∫ sqrt(1 + z'²) dr``.
+
+    Parameters
+    ----------
+    face : Face
+        The surface of revolution.
+    end : float
+        Aperture to which it is followed, as `Face.aperture` has it [mm].
+
+    Returns
+    -------
+    Series
+        Arc length [mm].
+    """
+
+    def speed(aperture: Array) -> Array:
+        return np.asarray(face.radius_rate(aperture) * np.hypot(1.0, face.incline(face.radius_at(aperture))))
+
+    (rate,) = resolve(lambda aperture: speed(aperture)[None], [0.0, end], sizes=[1.0])
+    return rate.integral()
 
 
 def _by_arc_length(values: Callable[[Array], Array], run: Series) -> Meridian:

@@ -1,0 +1,223 @@
+"""How far flat facets stray from a surface of revolution: bounded, not sampled.
+
+Over one facet the signed distance d is a smooth function of two coordinates, and the way it bends is known
+(:mod:`profiles.surfaces`), so that its extremes need no sampling:
+
+- where d is convex its largest value is at a corner. Its smallest is found by Newton's method and bounded by the
+  tangent plane there, ``d(p) ≥ d(q) + g·(p − q)``, which is exact at the minimum; where d is concave, likewise;
+- where d is a saddle both extremes are on the edges. These are divided, and between two points an edge strays from
+  its chord by at most ``M e²/8``, M bounding the second derivative;
+- where the kind changes the facet is divided in four until each part is of one kind or ``M e²/6`` is negligible.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from profiles.surfaces import CONCAVE, CONVEX, MIXED, SADDLE, Contact, Surface
+
+Array = NDArray[np.float64]
+Rows = NDArray[np.intp]
+
+EDGE_PARTS = 16
+DIVISIONS = 6
+ROUNDS = 8
+
+
+@dataclass(frozen=True, eq=False)
+class Spans:
+    """Range of the signed distance over each of m facets.
+
+    Parameters
+    ----------
+    low, high : ndarray of shape (m,)
+        Bounds of the smallest and the largest signed distance, outside positive [mm].
+    """
+
+    low: Array
+    high: Array
+
+    @property
+    def largest(self) -> Array:
+        """Largest distance on either side for each facet [mm]."""
+        return np.maximum(np.abs(self.low), np.abs(self.high))
+
+
+def facet_spans(surface: Surface, vertices: Array, triangles: Rows, *, divisions: int = DIVISIONS) -> Spans:
+    """Return bounds of the signed distance between facets and a surface.
+
+    Parameters
+    ----------
+    surface : Surface
+        The exact surface [mm].
+    vertices : ndarray of shape (n, 3)
+        Corners in space [mm].
+    triangles : ndarray of shape (m, 3)
+        Row numbers of each facet's corners.
+    divisions : int
+        How often a facet on which the surface changes its kind may be divided in four.
+
+    Returns
+    -------
+    Spans
+        Never narrower than any sampling finds, to rounding.
+    """
+    contact = surface.touch(vertices)
+    corners = vertices[triangles]
+    edges = np.linalg.norm(corners - np.roll(corners, -1, axis=1), axis=2).max(axis=1)
+    feet = contact.where[triangles]
+    kinds = surface.kinds(feet.min(axis=1) - 0.5 * edges, feet.max(axis=1) + 0.5 * edges)
+    values = contact.distance[triangles]
+    low, high = values.min(axis=1), values.max(axis=1)
+    for kind in (CONVEX, CONCAVE):
+        here = np.flatnonzero(kinds == kind)
+        if len(here):
+            least = _least_convex(surface, corners[here], _Corners.of(contact, triangles[here], kind), kind)
+            (low if kind == CONVEX else high)[here] = kind * least
+    here = np.flatnonzero(kinds == SADDLE)
+    if len(here):
+        low[here], high[here] = _saddle(surface, corners[here], contact.gradient[triangles[here]])
+    here = np.flatnonzero(kinds == MIXED)
+    if len(here):
+        low[here], high[here] = _mixed(surface, corners[here], _Corners.of(contact, triangles[here], 1), divisions)
+    return Spans(low, high)
+
+
+@dataclass(frozen=True, eq=False)
+class _Corners:
+    """Distances and gradients at the three corners of facets, times the sign that makes them convex."""
+
+    values: Array
+    gradients: Array
+
+    @classmethod
+    def of(cls, contact: Contact, triangles: Rows, sign: int) -> _Corners:
+        return cls(sign * contact.distance[triangles], sign * contact.gradient[triangles])
+
+
+def _least_convex(surface: Surface, corners: Array, start: _Corners, sign: int) -> Array:
+    """Return a lower bound of ``sign`` times the distance, which is convex, over facets (m, 3, 3)."""
+    sides = corners[:, 1:] - corners[:, :1]
+    model = _corner_model(sides, start.gradients)
+    place = _lowest_place(np.full((len(corners), 2), 1.0 / 3.0), *model)
+    bound = np.full(len(corners), -np.inf)
+    open_, spread = np.arange(len(corners)), start.values.max(axis=1)
+    for _ in range(ROUNDS):
+        contact = surface.touch(corners[open_, 0] + np.einsum("mk,mkx->mx", place, sides[open_]))
+        slope, bends = _local_model(contact, corners[open_, 0], sides[open_], place, sign)
+        value = sign * contact.distance
+        # The tangent plane is lowest at a corner of the facet.
+        here = slope[:, 0] * place[:, 0] + slope[:, 1] * place[:, 1]
+        plane = value - here + np.minimum(0.0, slope.min(axis=1))
+        bound[open_] = np.maximum(bound[open_], plane)
+        wide = value - bound[open_] > 2e-4 * np.maximum(spread[open_] - value, 0.0) + 1e-10
+        if not wide.any():
+            break
+        place = _lowest_place(place[wide], slope[wide], bends[wide])
+        open_ = open_[wide]
+    return np.minimum(bound, start.values.min(axis=1))
+
+
+def _corner_model(sides: Array, gradients: Array) -> tuple[Array, Array]:
+    """Return slope at the centroid and second derivatives along two sides, from the gradients at the corners."""
+    slopes = np.einsum("mkx,mcx->mck", sides, gradients)
+    change = slopes[:, 1:] - slopes[:, :1]
+    return slopes.mean(axis=1), np.asarray(0.5 * (change + change.transpose(0, 2, 1)))
+
+
+def _local_model(contact: Contact, first: Array, sides: Array, place: Array, sign: int) -> tuple[Array, Array]:
+    """Return slope and second derivatives along two sides at one place of each facet."""
+    slope = sign * np.einsum("mkx,mx->mk", sides, contact.gradient)
+    points = first + np.einsum("mk,mkx->mx", place, sides)
+    radius = np.maximum(np.hypot(points[:, 0], points[:, 1]), 1e-300)
+    around = (sides[:, :, 1] * points[:, :1] - sides[:, :, 0] * points[:, 1:2]) / radius[:, None]
+    normal = np.einsum("mkx,mx->mk", sides, contact.gradient)
+    # What is left of a product of two sides beside its parts along the normal and around the axis lies on the meridian.
+    whole = np.einsum("mkx,mlx->mkl", sides, sides)
+    hoops = around[:, :, None] * around[:, None, :]
+    along = whole - hoops - normal[:, :, None] * normal[:, None, :]
+    bends = sign * (contact.bend[:, None, None] * along + contact.hoop[:, None, None] * hoops)
+    return slope, bends
+
+
+def _lowest_place(place: Array, slope: Array, bends: Array) -> Array:
+    """Return where on the triangle (0,0), (1,0), (0,1) a convex quadratic, known at ``place``, is lowest."""
+    ux, vy, uy = bends[:, 0, 0], bends[:, 1, 1], bends[:, 0, 1]
+    # Coefficients of the quadratic about (0, 0).
+    one = slope[:, 0] - ux * place[:, 0] - uy * place[:, 1]
+    two = slope[:, 1] - uy * place[:, 0] - vy * place[:, 1]
+
+    def height(u: Array, v: Array) -> Array:
+        return np.asarray(one * u + two * v + 0.5 * (ux * u * u + vy * v * v) + uy * u * v)
+
+    determinant = ux * vy - uy * uy
+    with np.errstate(divide="ignore", invalid="ignore"):
+        inner = ((uy * two - vy * one) / determinant, (uy * one - ux * two) / determinant)
+        on_u = _clipped(-one / ux)
+        on_v = _clipped(-two / vy)
+        across = _clipped((vy - uy + two - one) / (ux + vy - 2.0 * uy))
+    # Comparisons with what is not a number are false; a plane's minimum is on an edge.
+    inside = (inner[0] >= 0.0) & (inner[1] >= 0.0) & (inner[0] <= 1.0 - inner[1])
+    zero = np.zeros(len(place))
+    places = [(on_u, zero), (zero, on_v), (across, 1.0 - across)]
+    places.append((np.where(inside, inner[0], on_u), np.where(inside, inner[1], 0.0)))
+    best = np.argmin(np.stack([height(u, v) for u, v in places]), axis=0)
+    stacked = np.array(places)
+    rows = np.arange(len(place))
+    return np.stack([stacked[best, 0, rows], stacked[best, 1, rows]], axis=1)
+
+
+def _clipped(values: Array) -> Array:
+    return np.clip(np.nan_to_num(values, nan=0.5, posinf=1.0, neginf=0.0), 0.0, 1.0)
+
+
+def _bent(surface: Surface, corners: Array, sides: Array, gradients: Array) -> Array:
+    """Return bounds of the distance's second derivative along each side of facets, ``|sᵀ H s|``, shape (m, 3).
+
+    A side's part along the meridian changes steadily from one end to the other, so that it is largest at an end;
+    a fifth is added for what the surface turns in between.
+    """
+    bend, hoop = surface.strongest
+    square = (sides**2).sum(axis=2)
+    most = np.zeros_like(square)
+    for turn in (0, -1):
+        points, normals = np.roll(corners, turn, axis=1), np.roll(gradients, turn, axis=1)
+        radius = np.maximum(np.hypot(points[..., 0], points[..., 1]), 1e-300)
+        around = (points[..., 0] * sides[..., 1] - points[..., 1] * sides[..., 0]) / radius
+        most = np.maximum(most, square - around**2 - (normals * sides).sum(axis=2) ** 2)
+    return np.asarray(1.2 * (bend * most + hoop * square))
+
+
+def _saddle(surface: Surface, corners: Array, gradients: Array) -> tuple[Array, Array]:
+    """Return the range of the distance over facets (m, 3, 3) on which it is a saddle: that over their edges."""
+    shares = np.arange(EDGE_PARTS) / EDGE_PARTS
+    sides = np.roll(corners, -1, axis=1) - corners
+    points = corners[:, :, None, :] + shares[None, None, :, None] * sides[:, :, None, :]
+    values = surface.touch(points.reshape(-1, 3)).distance.reshape(len(corners), -1)
+    between = _bent(surface, corners, sides, gradients).max(axis=1) / (8.0 * EDGE_PARTS**2)
+    return values.min(axis=1) - between, values.max(axis=1) + between
+
+
+def _mixed(surface: Surface, corners: Array, start: _Corners, divisions: int) -> tuple[Array, Array]:
+    """Return the range of the distance over facets (m, 3, 3) on which its kind changes, by dividing them."""
+    sides = np.roll(corners, -1, axis=1) - corners
+    between = _bent(surface, corners, sides, start.gradients).max(axis=1) / 6.0
+    low, high = start.values.min(axis=1) - between, start.values.max(axis=1) + between
+    more = np.flatnonzero(between > 1e-3 * (high - low - 2.0 * between) + 1e-10)
+    if not divisions or not len(more):
+        return low, high
+    spans = facet_spans(surface, *_quarters(corners[more]), divisions=divisions - 1)
+    low[more] = np.maximum(low[more], spans.low.reshape(-1, 4).min(axis=1))
+    high[more] = np.minimum(high[more], spans.high.reshape(-1, 4).max(axis=1))
+    return low, high
+
+
+def _quarters(corners: Array) -> tuple[Array, Rows]:
+    """Return each facet (m, 3, 3) divided in four at the middles of its sides: vertices and triangles."""
+    middles = 0.5 * (corners + np.roll(corners, -1, axis=1))
+    parts = [middles, *(np.stack([corners[:, k], middles[:, k], middles[:, k - 1]], axis=1) for k in range(3))]
+    vertices = np.stack(parts, axis=1).reshape(-1, 3)
+    return vertices, np.arange(len(vertices), dtype=np.intp).reshape(-1, 3)

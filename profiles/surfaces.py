@@ -1,0 +1,322 @@
+"""Signed distance from points in space to the surface that one stretch of a half section turns about the axis.
+
+The z-axis of space is the axis of revolution. The *outside* of a stretch is the left of its walk; distances are
+positive there. A stretch is thought to run on beyond its ends, a curve along its end tangents, a line or arc along
+itself. The distance's second derivatives are those of the parallel surface: along the meridian ``−κ/(1 − κd)``, around
+the axis ``n_r/r``, and 0 along the normal. Where both are at least 0 the distance is a convex function of space.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from functools import cached_property
+from itertools import pairwise
+from typing import Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from profiles.arcpath import ArcPath
+from profiles.meridian import Meridian
+from profiles.series import Series
+from profiles.solids import Solid
+
+Array = NDArray[np.float64]
+Kinds = NDArray[np.int8]
+
+CONVEX, CONCAVE, SADDLE, MIXED = 1, -1, 0, 2
+"""Which way the signed distance bends on a stretch, the same everywhere or changing."""
+
+TABLE = 512
+ROUNDING = 1e-13
+STEPS = 12
+
+
+@dataclass(frozen=True, eq=False)
+class Contact:
+    """What a surface is to k points in space.
+
+    Parameters
+    ----------
+    distance : ndarray of shape (k,)
+        Signed distance, outside positive [mm].
+    gradient : ndarray of shape (k, 3)
+        Its gradient, the outward unit normal of the surface at the point's foot [-].
+    bend, hoop : ndarray of shape (k,)
+        Second derivatives of the distance along the meridian and around the axis [1/mm].
+    where : ndarray of shape (k,)
+        Arc length of the foot along the stretch [mm]; of a line or arc not needed, and 0.
+    apart : ndarray of shape (k,)
+        Distance to the stretch itself, ends included [mm].
+    """
+
+    distance: Array
+    gradient: Array
+    bend: Array
+    hoop: Array
+    where: Array
+    apart: Array
+
+
+class Surface(Protocol):
+    """One stretch of a half section, turned about the axis."""
+
+    @property
+    def strongest(self) -> tuple[float, float]:
+        """Largest curvature along the meridian and largest around the axis [1/mm]."""
+
+    def touch(self, points: Array) -> Contact:
+        """Return what the surface is to points (k, 3) in space [mm]."""
+
+    def kinds(self, first: Array, last: Array) -> Kinds:
+        """Return which way the distance bends between arc lengths [mm]: CONVEX, CONCAVE, SADDLE or MIXED."""
+
+
+def stretches(solid: Solid) -> tuple[Surface, ...]:
+    """Return the surfaces of a solid: the forming surface first, then the rest in order, the axis itself left out.
+
+    Parameters
+    ----------
+    solid : Solid
+        The solid [mm].
+
+    Returns
+    -------
+    tuple of Surface
+        At least one.
+    """
+    radii = solid.rest.vertices[:, 0]
+    on_axis = np.maximum(radii[:-1], radii[1:]) <= 1e-9 * solid.size
+    rest = (TurnedArc(solid.rest, int(number)) for number in np.flatnonzero(~on_axis))
+    return (TurnedCurve(solid.curve), *rest)
+
+
+def _contact(
+    points: Array, distance: Array, normal: tuple[Array, Array], bend: Array, foot: tuple[Array, Array]
+) -> Contact:
+    """Put a contact together; ``foot`` is the arc length and the distance to the stretch itself."""
+    across, up = normal
+    radius = np.hypot(points[:, 0], points[:, 1])
+    inverse = 1.0 / np.maximum(radius, 1e-300)
+    on_axis = radius < 1e-12
+    gradient = np.empty_like(points)
+    gradient[:, 0] = np.where(on_axis, across, across * points[:, 0] * inverse)
+    gradient[:, 1] = np.where(on_axis, 0.0, across * points[:, 1] * inverse)
+    gradient[:, 2] = up
+    along = -bend / np.maximum(1.0 - bend * distance, 1e-3)
+    hoop = np.where(on_axis, along, across * inverse)
+    return Contact(distance, gradient, along, hoop, *foot)
+
+
+@dataclass(frozen=True, eq=False)
+class TurnedCurve:
+    """The surface that an exact curve turns.
+
+    Parameters
+    ----------
+    curve : Meridian
+        Walked with the outside to its left [mm].
+    """
+
+    curve: Meridian
+
+    @cached_property
+    def _table(self) -> _Taylor:
+        cells = TABLE
+        table = _Taylor.of(self.curve, cells)
+        while table.error > ROUNDING * (self.curve.end - self.curve.start) and cells < 32 * TABLE:
+            cells *= 4
+            table = _Taylor.of(self.curve, cells)
+        return table
+
+    @cached_property
+    def _bends(self) -> tuple[Array, Array, Array]:
+        """Arc lengths, and signs of the second derivatives there: along the meridian and around the axis."""
+        curve = self.curve
+        where = np.union1d(self._table.edges, curve.curvature.extremes()[0])
+        along, around = -curve.curvature(where), -np.sin(curve.slope(where))
+        least = 1e-9 / (curve.end - curve.start)
+        return (
+            where,
+            np.sign(np.where(np.abs(along) < least, 0.0, along)),
+            np.sign(np.where(np.abs(around) < 1e-9, 0.0, around)),
+        )
+
+    @property
+    def strongest(self) -> tuple[float, float]:
+        """Largest curvature along the meridian and largest around the axis [1/mm]."""
+        where, _, _ = self._bends
+        bend = np.abs(self.curve.curvature(where))
+        # On the axis the two are the same.
+        radius = self.curve.radius(where)
+        off = radius > 1e-6 * radius.max()
+        hoop = np.abs(np.sin(self.curve.slope(where[off]))) / radius[off]
+        return float(bend.max()), float(hoop.max())
+
+    def kinds(self, first: Array, last: Array) -> Kinds:
+        """Return which way the distance bends between arc lengths [mm]: CONVEX, CONCAVE, SADDLE or MIXED."""
+        where, along, around = self._bends
+        whole = _kind(along.min(), along.max(), around.min(), around.max())
+        if whole != MIXED:
+            return np.full(len(first), whole, dtype=np.int8)
+        low = np.maximum(np.searchsorted(where, first, side="right") - 1, 0)
+        high = np.minimum(np.searchsorted(where, last, side="left"), len(where) - 1)
+        found = np.full(len(first), MIXED, dtype=np.int8)
+        for kind, one, other in ((CONVEX, 1, 1), (CONCAVE, -1, -1), (SADDLE, 1, -1), (SADDLE, -1, 1)):
+            # How many places up to each have the wrong sign: none between first and last makes the kind.
+            wrong = np.concatenate([[0], np.cumsum((along * one < 0.0) | (around * other < 0.0))])
+            found[wrong[high + 1] == wrong[low]] = kind
+        return found
+
+    def touch(self, points: Array) -> Contact:
+        """Return what the surface is to points (k, 3) in space [mm]."""
+        radius, height = np.hypot(points[:, 0], points[:, 1]), points[:, 2]
+        table = self._table
+        where = np.interp(radius, table.radii, table.edges)
+        for _ in range(STEPS):
+            along, distance, _, bend = _gap(table, radius, height, where)
+            step = along / np.clip(1.0 - bend * distance, 0.2, 5.0)
+            before, where = where, np.clip(where + step, self.curve.start, self.curve.end)
+            # The next step is of the order of this one squared, and the distance does not feel it.
+            if float(np.abs(where - before).max(initial=0.0)) <= 1e-4 * (self.curve.end - self.curve.start):
+                break
+        along, distance, normal, bend = _gap(table, radius, height, where)
+        return _contact(points, distance, normal, bend, (where, np.hypot(along, distance)))
+
+
+@dataclass(frozen=True, eq=False)
+class _Taylor:
+    """Radius, height and slope of a curve as Taylor polynomials over many short cells, faster than its own series."""
+
+    edges: Array
+    radii: Array
+    centres: Array
+    factors: Array
+    error: float
+
+    @classmethod
+    def of(cls, curve: Meridian, cells: int) -> _Taylor:
+        shares = np.maximum(np.ceil(cells * np.diff(curve.breaks) / (curve.end - curve.start)), 16.0).astype(int)
+        pieces = [
+            np.linspace(start, end, share + 1)[:-1]
+            for (start, end), share in zip(pairwise(curve.breaks.tolist()), shares.tolist(), strict=True)
+        ]
+        edges = np.concatenate([*pieces, [curve.end]])
+        centres = 0.5 * (edges[:-1] + edges[1:])
+        factors = np.stack([_derivatives(series, centres) for series in (curve.radius, curve.height, curve.slope)], 1)
+        radii = curve.radius(edges)
+        table = cls(edges, np.maximum.accumulate(radii), centres, factors, 0.0)
+        strayed = [
+            np.abs(found - exact)
+            for side in (edges[:-1], edges[1:])
+            for found, exact in zip(table.at(side)[:2], (curve.radius(side), curve.height(side)), strict=True)
+        ]
+        return replace(table, error=float(np.max(strayed)))
+
+    def at(self, where: Array) -> tuple[Array, Array, Array, Array]:
+        """Return radius, height, slope and curvature at arc lengths."""
+        cell = np.clip(np.searchsorted(self.edges, where, side="right") - 1, 0, len(self.centres) - 1)
+        step = where - self.centres[cell]
+        factors = self.factors[cell]
+        values = factors[:, :, -1]
+        for power in range(factors.shape[2] - 2, -1, -1):
+            values = values * step[:, None] + factors[:, :, power]
+        return values[:, 0], values[:, 1], values[:, 2], factors[:, 2, 1]
+
+
+def _derivatives(series: Series, where: Array) -> Array:
+    """Return Taylor factors of a series up to the fourth, shape (n, 5)."""
+    found, scale = [series(where)], 1.0
+    for power in range(1, 5):
+        series, scale = series.derivative(), scale * power
+        found.append(series(where) / scale)
+    return np.stack(found, axis=1)
+
+
+def _gap(table: _Taylor, radius: Array, height: Array, where: Array) -> tuple[Array, Array, tuple[Array, Array], Array]:
+    """Return how far points lie along tangents and normals of a curve [mm], the normals and the curvature."""
+    there, level, slope, bend = table.at(where)
+    cosine, sine = np.cos(slope), np.sin(slope)
+    across, up = radius - there, height - level
+    return across * cosine + up * sine, up * cosine - across * sine, (-sine, cosine), bend
+
+
+@dataclass(frozen=True, eq=False)
+class TurnedArc:
+    """The surface that one line or arc of a path turns.
+
+    Parameters
+    ----------
+    path : ArcPath
+        Walked with the outside to its left [mm].
+    number : int
+        Which line or arc of the path.
+    """
+
+    path: ArcPath
+    number: int
+
+    @cached_property
+    def ends(self) -> tuple[Array, Array]:
+        """First and last point (radius, height) [mm]."""
+        return self.path.vertices[self.number], self.path.vertices[self.number + 1]
+
+    @cached_property
+    def _frame(self) -> tuple[Array, Array, float]:
+        """Tangents at both ends and the curvature."""
+        starts, ends = self.path.tangents
+        return starts[self.number], ends[self.number], float(self.path.curvatures[self.number])
+
+    @cached_property
+    def normals(self) -> tuple[Array, Array]:
+        """Outward unit normals (radius, height) at both ends."""
+        start, end, _ = self._frame
+        return np.array([-start[1], start[0]]), np.array([-end[1], end[0]])
+
+    @cached_property
+    def curvature(self) -> float:
+        """Signed curvature [1/mm], left positive."""
+        return self._frame[2]
+
+    @property
+    def strongest(self) -> tuple[float, float]:
+        """Largest curvature along the meridian and largest around the axis [1/mm]."""
+        radius = self.path.along(self.number, np.linspace(0.0, 1.0, 33))[:, 0].min()
+        across = max(abs(float(normal[0])) for normal in self.normals)
+        bend = abs(self.curvature)
+        return bend, (1.0 if bend else across) / max(float(radius), 1e-9) if across > 1e-9 else 0.0
+
+    def kinds(self, first: Array, last: Array) -> Kinds:  # noqa: ARG002  a line or arc bends alike everywhere
+        """Return which way the distance bends: CONVEX, CONCAVE, SADDLE or MIXED."""
+        around = np.array([normal[0] if abs(normal[0]) > 1e-9 else 0.0 for normal in self.normals])
+        if self.curvature and abs(float(self.path.turns[self.number])) > np.pi:
+            return np.full(len(first), MIXED, dtype=np.int8)
+        return np.full(len(first), _kind(-self.curvature, -self.curvature, around.min(), around.max()), dtype=np.int8)
+
+    def touch(self, points: Array) -> Contact:
+        """Return what the surface is to points (k, 3) in space [mm]."""
+        start, end, bend = self._frame
+        first, last = self.ends
+        plane = np.column_stack([np.hypot(points[:, 0], points[:, 1]), points[:, 2]])
+        reach = plane - first
+        left = self.normals[0]
+        rise, square = reach @ left, (reach**2).sum(axis=1)
+        root = np.sqrt(np.maximum(1.0 - 2.0 * bend * rise + bend**2 * square, 1e-300))
+        # Distance to the circle without dividing by its curvature, so that a line is no special case.
+        distance = (2.0 * rise - bend * square) / (1.0 + root)
+        normal = (left - bend * reach) / root[:, None]
+        beside = (reach @ start >= 0.0) & ((plane - last) @ end <= 0.0)
+        apart = np.where(beside, np.abs(distance), np.minimum(np.sqrt(square), np.hypot(*(plane - last).T)))
+        bends = np.full(len(points), bend)
+        return _contact(points, distance, (normal[:, 0], normal[:, 1]), bends, (np.zeros(len(points)), apart))
+
+
+def _kind(along_least: float, along_most: float, around_least: float, around_most: float) -> int:
+    """Return the kind of a stretch from the range of its second derivatives, or of their signs."""
+    if along_least >= 0.0 and around_least >= 0.0:
+        return CONVEX
+    if along_most <= 0.0 and around_most <= 0.0:
+        return CONCAVE
+    if (along_least >= 0.0 and around_most <= 0.0) or (along_most <= 0.0 and around_least >= 0.0):
+        return SADDLE
+    return MIXED
