@@ -20,11 +20,12 @@ from fabricate.springback import CurvatureMap, ReleasedFace, springback_map
 from fabricate.thinning import FormedSheet, thickness_on_mould
 from profiles.errors import GeometryError, JobError
 from profiles.face import Face
-from profiles.meridian import Meridian
+from profiles.meridian import Meridian, arc_length_over_aperture
 from profiles.series import Series, merged_breaks, resolve
 
 ROUNDS = 30
 SETTLED = 1e-12
+NEAREST_TO_CLOSING = 0.9999
 
 
 @dataclass(frozen=True, eq=False)
@@ -103,10 +104,23 @@ class Chain:
         """Height of the reflecting face's vertex over the mould's vertex, while it lies on the mould [mm]."""
         return -self.enlargement * float(self.shift(self.shift.start))
 
-    def mould_radius_at(self, arc_length: float) -> float:
-        """Return the radius on the mould of a material point, given by its arc length on the reflecting face [mm]."""
-        slope = float(self.on_mould.slope(arc_length))
-        return self.enlargement * float(self.on_mould.radius(arc_length) - self.shift(arc_length) * np.sin(slope))
+    def point_on_mould(self, arc_length: float) -> tuple[float, float]:
+        """Return where a material point of the reflecting face lies on the mould's forming surface.
+
+        Parameters
+        ----------
+        arc_length : float
+            Of the point, along the reflecting face [mm].
+
+        Returns
+        -------
+        radius, height : float
+            Of the foot of its normal on the cold mould, the height over the mould's vertex [mm].
+        """
+        where = np.array([arc_length])
+        foot = self.on_mould.points(where) + self.shift(where)[:, None] * self.on_mould.normals(where)
+        radius, height = self.enlargement * foot[0]
+        return float(radius), float(height) + self.vertex_gap
 
     def to_mould(self, part: Meridian) -> Meridian:
         """Return the forming surface that makes a released reflecting face.
@@ -207,8 +221,13 @@ def rim_arc_length(face: Face, radius: float) -> float:
     >>> round(rim_arc_length(Face(1.0), 2.0), 9)
     2.295587149
     """
-    (speed,) = resolve(lambda where: np.hypot(1.0, face.incline(where))[None], [0.0, radius], sizes=[1.0])
-    return float(speed.integral()(radius))
+    if radius > NEAREST_TO_CLOSING * face.widest:
+        raise GeometryError(
+            f"the rim's radius is {radius:.6g} mm and the face closes at {face.widest:.6g} mm: ask for a rim under "
+            f"{NEAREST_TO_CLOSING} of that, or a longer focal length"
+        )
+    run = arc_length_over_aperture(face, face.aperture(radius))
+    return float(run(run.end))
 
 
 def _on_its_vertex(curve: Meridian) -> Meridian:

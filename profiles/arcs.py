@@ -198,7 +198,7 @@ def _tangents(curve: Meridian, state: _State) -> Array:
 
 def _path(curve: Meridian, state: _State) -> ArcPath:
     vertices = state.vertices(curve)
-    if curve.start == 0.0:
+    if curve.on_axis:
         vertices[0, 0] = 0.0
     chords = np.diff(vertices, axis=0)
     starts = _tangents(curve, state)[:-1]
@@ -287,7 +287,7 @@ def _step(curve: Meridian, state: _State, gaps: Array, by_place: Array, by_turn:
     unknowns = _Unknowns(len(gaps))
     cost = np.zeros(unknowns.bound + 1)
     cost[unknowns.bound] = 1.0
-    level = curve.start == 0.0
+    level = curve.on_axis
     result = linprog(
         cost,
         A_ub=_within_bound(unknowns, by_place),

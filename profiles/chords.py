@@ -99,7 +99,7 @@ def chords(curve: Meridian, count: int) -> ArcPath:
     rise = curve.curvature(middles) * np.diff(joints) ** 2 / 16.0
     offsets = -0.5 * (np.concatenate([rise[:1], rise]) + np.concatenate([rise, rise[-1:]]))
     vertices = curve.points(joints) + offsets[:, None] * curve.normals(joints)
-    if curve.start == 0.0:
+    if curve.on_axis:
         vertices[0, 0] = 0.0
     return ArcPath(vertices, np.zeros(count))
 

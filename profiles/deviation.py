@@ -25,6 +25,7 @@ from profiles.series import interpolate, real_roots
 Array = NDArray[np.float64]
 
 SAMPLES = 4000
+WIDEST_TURN = 2.5
 
 
 @dataclass(frozen=True)
@@ -183,7 +184,7 @@ def _edges(curve: Meridian, lower: float, upper: float) -> Array:
 def _fans(curve: Meridian, path: ArcPath) -> _Fans | None:
     """Return what part of the curve each stretch answers for, or None where the path is too far off to say."""
     joints = curve.nearest(path.vertices)
-    if (np.diff(joints) <= 0.0).any() or (np.abs(path.turns) > 1.0).any():
+    if (np.diff(joints) <= 0.0).any() or (np.abs(path.turns) > WIDEST_TURN).any():
         return None
     starts, ends = path.tangents
     along = curve.tangents(joints)

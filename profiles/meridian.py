@@ -111,6 +111,11 @@ class Meridian:
         """Arc length at the outer end [mm]."""
         return self.slope.end
 
+    @property
+    def on_axis(self) -> bool:
+        """Whether the curve starts on the axis."""
+        return bool(abs(self.radius(self.start)) <= 1e-12 * (self.end - self.start))
+
     @cached_property
     def breaks(self) -> Array:
         """Arc lengths between which the curve is smooth [mm]."""

@@ -46,7 +46,7 @@ def test_arcs_keep_both_tolerances(curve: Meridian, share: float, slope: float) 
 def test_a_slope_tolerance_asks_for_about_what_theory_says() -> None:
     curve = _curve(0.3, 0.0)
     fit = fewest_arcs(curve, distance=0.05, slope=2e-4)
-    assert len(fit.path) <= np.ceil(1.15 * arc_limit_for_slope(curve, 2e-4))
+    assert len(fit.path) <= np.ceil(1.35 * arc_limit_for_slope(curve, 2e-4))
 
 
 def test_a_bored_curve_may_start_with_any_tangent() -> None:

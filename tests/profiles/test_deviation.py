@@ -1,5 +1,7 @@
 from __future__ import annotations
 
+from itertools import pairwise
+
 import numpy as np
 import pytest
 from hypothesis import given
@@ -29,7 +31,7 @@ def _along_normals(curve: Meridian, path: ArcPath) -> float:
     """Return the largest distance of dense samples of a curve from the circles and lines of a path near it."""
     largest = 0.0
     joints = curve.nearest(path.vertices)
-    for number, (start, end) in enumerate(zip(joints[:-1], joints[1:], strict=True)):
+    for number, (start, end) in enumerate(pairwise(joints.tolist())):
         points = curve.points(np.linspace(start, end, 301))
         if path.bulges[number]:
             radius = 1.0 / abs(path.curvatures[number])
@@ -44,7 +46,7 @@ def _along_normals(curve: Meridian, path: ArcPath) -> float:
 @given(st.from_type(Meridian), st.integers(1, 6), st.floats(-1e-3, 1e-3), st.data())
 def test_it_is_never_less_than_sampling_finds(curve: Meridian, count: int, shift: float, data: st.DataObject) -> None:
     path = tangent_arcs(curve, count) if data.draw(st.booleans()) else chords(curve, 4 * count)
-    moved = ArcPath(path.vertices + [0.0, shift * curve.end], path.bulges)
+    moved = ArcPath(path.vertices + np.array([0.0, shift * curve.end]), path.bulges)
     found = deviation(curve, moved).normal
     assert found >= _along_normals(curve, moved) - 1e-9 * curve.end
     assert found >= _sampled(curve, moved)
