@@ -24,7 +24,7 @@ from profiles.meridian import Meridian, arc_length_over_aperture
 from profiles.series import Series, merged_breaks, resolve
 
 ROUNDS = 30
-SETTLED = 1e-12
+SETTLED = 1e-11
 NEAREST_TO_CLOSING = 0.9999
 
 
@@ -166,14 +166,17 @@ class Chain:
 
     def _reflecting_face_over(self, contact: Meridian) -> Meridian:
         """Return the reflecting face over a forming surface: its own offset, as thick as it makes the sheet itself."""
-        face = contact.offset(_negative(self._shift(contact)))
+        thickness = self.job.sheet.thickness
+        shift = self._shift(contact)
         for _ in range(ROUNDS):
-            shift = self._shift(face)
-            gap, overrun = _gap_to(contact, face, shift)
-            face = face.offset(gap)
-            face = face.part(face.start, face.end - overrun)
-            if max(abs(gap.largest()[1]), abs(gap.smallest()[1]), abs(overrun)) < SETTLED * contact.end:
+            face, run = contact.offset_source(shift)
+            better = self._shift(face)
+            breaks = merged_breaks(contact.breaks, run.solve(better.breaks), start=contact.start, end=contact.end)
+            before = shift(breaks)
+            moved = float(np.abs(better(run(breaks)) - before).max())
+            if moved < SETTLED * thickness:
                 return face
+            shift = _followed(better, run, breaks, max(1e-4 * moved, 1e-13 * thickness))
         raise GeometryError(
             "the sheet's thickness over this mould does not settle: state it by a table (forming.thinning.law = "
             '"stations")'
@@ -234,27 +237,14 @@ def _on_its_vertex(curve: Meridian) -> Meridian:
     return curve.raised(-float(curve.height(curve.start)))
 
 
-def _negative(series: Series) -> Series:
-    return Series(tuple(-piece for piece in series.pieces))
+def _followed(shift: Series, run: Series, breaks: np.ndarray, noise: float) -> Series:
+    """Return a distance along the reflecting face over the arc length of the forming surface [mm].
 
-
-def _gap_to(contact: Meridian, face: Meridian, shift: Series) -> tuple[Series, float]:
-    """Return how far a face's own forming surface lies under the wanted one, and how far past its end [mm]."""
-    breaks = merged_breaks(face.breaks, shift.breaks, start=face.start, end=face.end)
-
-    def reached(where: np.ndarray) -> np.ndarray:
-        return np.asarray(face.points(where) + shift(where)[..., None] * face.normals(where))
-
-    def gap(where: np.ndarray) -> np.ndarray:
-        points = reached(where)
-        foot = contact.nearest(points)
-        return np.asarray(((contact.points(foot) - points) * contact.normals(foot)).sum(axis=1))
-
-    (series,) = resolve(lambda where: gap(where)[None], breaks, sizes=[contact.end])
-    end = np.array([face.end])
-    last = np.array([contact.end])
-    overrun = float(((reached(end) - contact.points(last)) * contact.tangents(last)).sum())
-    return series, overrun
+    Each round of the search takes a derivative, which would blow up what is not known yet: coefficients that are small
+    against the last change are left out.
+    """
+    (followed,) = resolve(lambda where: shift(run(where))[None], breaks, sizes=[10.0 * shift.size])
+    return Series(tuple(piece.trim(noise) for piece in followed.pieces))
 
 
 def _check_release(surface: Meridian) -> None:

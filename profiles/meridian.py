@@ -211,12 +211,61 @@ class Meridian:
         (rate,) = resolve(lambda where: speed(where)[None], breaks, sizes=[1.0])
         return _by_arc_length(values, rate.integral(value=self.start))
 
+    def offset_source(self, distance: Series) -> tuple[Meridian, Series]:
+        """Return the curve of which this one is the offset.
+
+        Parameters
+        ----------
+        distance : Series
+            How far each point of this curve lies to the left of the other one, along the other's normal [mm]; over
+            this curve's arc length.
+
+        Returns
+        -------
+        source : Meridian
+            The curve whose offset by that distance is this one [mm].
+        run : Series
+            Its arc length over this curve's [mm].
+
+        Raises
+        ------
+        GeometryError
+            If the distance changes faster than the arc length, or the curve folds.
+
+        Notes
+        -----
+        With ``P`` a point of this curve, ``n`` the other's normal and ``δ`` the distance, the other's point is
+        ``P − δ n``. Its derivative is normal to n only if ``sin(ψ_here − ψ_there) = dδ/ds``.
+        """
+        change = distance.derivative()
+        turn = change.derivative()
+        breaks = merged_breaks(self.breaks, distance.breaks, start=self.start, end=self.end)
+        if max(change.largest()[1], -change.smallest()[1]) >= 1.0:
+            raise GeometryError("a thickness changes faster than the arc length: check the thickness table")
+
+        def values(where: Array) -> Array:
+            radius, height, slope = self._values(where)
+            there = slope - np.arcsin(change(where))
+            return np.stack(
+                [radius + distance(where) * np.sin(there), height - distance(where) * np.cos(there), there]
+            )
+
+        def speed(where: Array) -> Array:
+            lean = np.sqrt(1.0 - change(where) ** 2)
+            return np.asarray(lean + distance(where) * (self.curvature(where) - turn(where) / lean))
+
+        (rate,) = resolve(lambda where: speed(where)[None], breaks, sizes=[1.0])
+        if rate.smallest()[1] <= 0.0:
+            raise GeometryError("an offset folds the curve: use a thinner sheet or cover")
+        run = rate.integral(value=self.start)
+        return _by_arc_length(values, run), run
+
     def _check_fold(self, shift: Series, breaks: Array) -> None:
         (room,) = resolve(lambda where: (1.0 - self.curvature(where) * shift(where))[None], breaks, sizes=[1.0])
         where, least = room.smallest()
         if least <= 1e-9:
             raise GeometryError(
-                f"an offset of {abs(float(shift(where))):.6g} mm at radius {float(self.radius(where)):.6g} mm is not "
+                f"an offset of {abs(float(shift(where))):.6g} mm at radius {abs(float(self.radius(where))):.6g} mm is not "
                 f"smaller than the radius of curvature there, {1.0 / abs(float(self.curvature(where))):.6g} mm, "
                 "and folds the curve: use a thinner sheet or cover, or put the other face on the mould"
             )

@@ -76,6 +76,11 @@ class Series:
             values[here] = self.pieces[number](where[here])
         return values
 
+    @property
+    def size(self) -> float:
+        """Largest coefficient, the size of the function to within a small factor."""
+        return max(float(np.abs(piece.coef).max()) for piece in self.pieces)
+
     def derivative(self) -> Series:
         """Return the derivative, piece by piece."""
         return Series(tuple(piece.deriv() for piece in self.pieces))
