@@ -45,7 +45,9 @@ class Aim:
     def density(self, change: Array) -> Array:
         """Return how many arcs a millimetre of curve needs where κ changes so fast [1/mm]."""
         by_distance = np.cbrt(change / (72.0 * np.sqrt(3.0) * self.distance))
-        return np.maximum(by_distance, np.sqrt(change / (12.0 * self.slope))) if self.slope > 0.0 else by_distance
+        if self.slope <= 0.0:
+            return np.asarray(by_distance)
+        return np.asarray(np.maximum(by_distance, np.sqrt(change / (12.0 * self.slope))))
 
 
 def arc_density(curve: Meridian, aim: Aim) -> tuple[Array, Array]:

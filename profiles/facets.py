@@ -22,7 +22,7 @@ from profiles.surfaces import CONCAVE, CONVEX, MIXED, SADDLE, Contact, Surface
 Array = NDArray[np.float64]
 Rows = NDArray[np.intp]
 
-EDGE_PARTS = 16
+EDGE_PARTS = 12
 DIVISIONS = 6
 ROUNDS = 8
 
@@ -67,16 +67,16 @@ def facet_spans(surface: Surface, vertices: Array, triangles: Rows, *, divisions
     """
     contact = surface.touch(vertices)
     corners = vertices[triangles]
-    edges = np.linalg.norm(corners - np.roll(corners, -1, axis=1), axis=2).max(axis=1)
+    beside = 0.5 * longest_sides(corners)
     feet = contact.where[triangles]
-    kinds = surface.kinds(feet.min(axis=1) - 0.5 * edges, feet.max(axis=1) + 0.5 * edges)
+    kinds = surface.kinds(least(feet) - beside, most(feet) + beside)
     values = contact.distance[triangles]
-    low, high = values.min(axis=1), values.max(axis=1)
+    low, high = least(values), most(values)
     for kind in (CONVEX, CONCAVE):
         here = np.flatnonzero(kinds == kind)
         if len(here):
-            least = _least_convex(surface, corners[here], _Corners.of(contact, triangles[here], kind), kind)
-            (low if kind == CONVEX else high)[here] = kind * least
+            bound = _least_convex(surface, corners[here], _Corners.of(contact, triangles[here], kind), kind)
+            (low if kind == CONVEX else high)[here] = kind * bound
     here = np.flatnonzero(kinds == SADDLE)
     if len(here):
         low[here], high[here] = _saddle(surface, corners[here], contact.gradient[triangles[here]])
@@ -84,6 +84,22 @@ def facet_spans(surface: Surface, vertices: Array, triangles: Rows, *, divisions
     if len(here):
         low[here], high[here] = _mixed(surface, corners[here], _Corners.of(contact, triangles[here], 1), divisions)
     return Spans(low, high)
+
+
+def least(values: Array) -> Array:
+    """Return the least of a few columns; numpy's own reduction is slow along short rows."""
+    return np.asarray(np.min(np.ascontiguousarray(values.T), axis=0))
+
+
+def most(values: Array) -> Array:
+    """Return the largest of a few columns."""
+    return np.asarray(np.max(np.ascontiguousarray(values.T), axis=0))
+
+
+def longest_sides(corners: Array) -> Array:
+    """Return the longest side of facets (m, 3, 3)."""
+    sides = (corners[:, one] - corners[:, other] for one, other in ((0, 1), (1, 2), (2, 0)))
+    return np.asarray(np.sqrt(np.max([np.einsum("mx,mx->m", side, side) for side in sides], axis=0)))
 
 
 @dataclass(frozen=True, eq=False)
@@ -104,21 +120,21 @@ def _least_convex(surface: Surface, corners: Array, start: _Corners, sign: int) 
     model = _corner_model(sides, start.gradients)
     place = _lowest_place(np.full((len(corners), 2), 1.0 / 3.0), *model)
     bound = np.full(len(corners), -np.inf)
-    open_, spread = np.arange(len(corners)), start.values.max(axis=1)
+    open_, spread = np.arange(len(corners)), most(start.values)
     for _ in range(ROUNDS):
         contact = surface.touch(corners[open_, 0] + np.einsum("mk,mkx->mx", place, sides[open_]))
         slope, bends = _local_model(contact, corners[open_, 0], sides[open_], place, sign)
         value = sign * contact.distance
         # The tangent plane is lowest at a corner of the facet.
         here = slope[:, 0] * place[:, 0] + slope[:, 1] * place[:, 1]
-        plane = value - here + np.minimum(0.0, slope.min(axis=1))
+        plane = value - here + np.minimum(0.0, np.minimum(slope[:, 0], slope[:, 1]))
         bound[open_] = np.maximum(bound[open_], plane)
         wide = value - bound[open_] > 2e-4 * np.maximum(spread[open_] - value, 0.0) + 1e-10
         if not wide.any():
             break
         place = _lowest_place(place[wide], slope[wide], bends[wide])
         open_ = open_[wide]
-    return np.minimum(bound, start.values.min(axis=1))
+    return np.asarray(np.minimum(bound, least(start.values)))
 
 
 def _corner_model(sides: Array, gradients: Array) -> tuple[Array, Array]:
@@ -181,14 +197,14 @@ def _bent(surface: Surface, corners: Array, sides: Array, gradients: Array) -> A
     a fifth is added for what the surface turns in between.
     """
     bend, hoop = surface.strongest
-    square = (sides**2).sum(axis=2)
-    most = np.zeros_like(square)
+    square = np.einsum("mcx,mcx->mc", sides, sides)
+    along = np.zeros_like(square)
     for turn in (0, -1):
         points, normals = np.roll(corners, turn, axis=1), np.roll(gradients, turn, axis=1)
         radius = np.maximum(np.hypot(points[..., 0], points[..., 1]), 1e-300)
         around = (points[..., 0] * sides[..., 1] - points[..., 1] * sides[..., 0]) / radius
-        most = np.maximum(most, square - around**2 - (normals * sides).sum(axis=2) ** 2)
-    return np.asarray(1.2 * (bend * most + hoop * square))
+        along = np.maximum(along, square - around**2 - np.einsum("mcx,mcx->mc", normals, sides) ** 2)
+    return np.asarray(1.2 * (bend * along + hoop * square))
 
 
 def _saddle(surface: Surface, corners: Array, gradients: Array) -> tuple[Array, Array]:
@@ -197,15 +213,15 @@ def _saddle(surface: Surface, corners: Array, gradients: Array) -> tuple[Array, 
     sides = np.roll(corners, -1, axis=1) - corners
     points = corners[:, :, None, :] + shares[None, None, :, None] * sides[:, :, None, :]
     values = surface.touch(points.reshape(-1, 3)).distance.reshape(len(corners), -1)
-    between = _bent(surface, corners, sides, gradients).max(axis=1) / (8.0 * EDGE_PARTS**2)
-    return values.min(axis=1) - between, values.max(axis=1) + between
+    between = most(_bent(surface, corners, sides, gradients)) / (8.0 * EDGE_PARTS**2)
+    return least(values) - between, most(values) + between
 
 
 def _mixed(surface: Surface, corners: Array, start: _Corners, divisions: int) -> tuple[Array, Array]:
     """Return the range of the distance over facets (m, 3, 3) on which its kind changes, by dividing them."""
     sides = np.roll(corners, -1, axis=1) - corners
-    between = _bent(surface, corners, sides, start.gradients).max(axis=1) / 6.0
-    low, high = start.values.min(axis=1) - between, start.values.max(axis=1) + between
+    between = most(_bent(surface, corners, sides, start.gradients)) / 6.0
+    low, high = least(start.values) - between, most(start.values) + between
     more = np.flatnonzero(between > 1e-3 * (high - low - 2.0 * between) + 1e-10)
     if not divisions or not len(more):
         return low, high

@@ -1,17 +1,17 @@
 """Where the rings of a triangulated surface of revolution go, and how many vertices each has, for the fewest triangles.
 
-Lengths are measured in the *metric of the chord error*: along the meridian ``du = sqrt|κ| ds``, around the axis the circle
-``c = 2π sqrt(r |sin ψ|)``. In it a triangle whose corners lie on the surface strays by ``R²/2``, R being its
-circumradius, or the largest half side where it is obtuse. The best triangle is equilateral (Fejes Tóth), and
+In the metric of the chord error (:mod:`profiles.ring_metric`) the best triangle is equilateral (Fejes Tóth), and
 
-    ``N* = ∫ c du / ((3√3/2) τ)``
+    ``N* = ∫ sqrt|K| dA / ((3√3/2) τ)``
 
 of them are needed, half as many where the deviation is balanced on both sides.
 
 Rings come in *bands*: within a band each ring has the same count and is turned by half a step against the one before,
 which makes isosceles triangles, nearly equilateral ones. Only between two bands, where the count grows, the triangles
-take every shape up to right-angled ones, and that strip must be lower. Bands grow by about the cube root of ``2/n``, where
-what the strips between them cost and what the change of shape within them costs are balanced.
+take every shape up to right-angled ones, and that strip must be lower. Bands grow by about the cube root of ``2/n``,
+where what the strips between them cost and what the change of shape within them costs are balanced. Several such
+*habits* are tried; the best is thinned out until its strips are as high as they may be, and its rings are then moved
+until every strip strays alike, by its exact deviation.
 
 References
 ----------
@@ -27,23 +27,34 @@ from math import ceil, cos, pi, sqrt
 import numpy as np
 from numpy.typing import NDArray
 
+from profiles.errors import GeometryError
 from profiles.facets import facet_spans
-from profiles.meridian import Meridian
+from profiles.ring_metric import Metric, worth
 from profiles.stitching import Rings, Sample
 from profiles.surfaces import Surface, TurnedCurve
 
 Array = NDArray[np.float64]
+Counts = NDArray[np.int64]
+Plan = list[tuple[float, int]]
 
-GRID = 4096
 LEAST_COUNT = 6
+FEW = 20
+"""Rings of so few vertices are not thinned out."""
+
 FIRST_RADIUS = 0.5
 """Radius of the first ring about a pole [mm] that readers which weld near vertices need; smaller only if it must be."""
 
 GROWTHS = np.linspace(0.6, 2.2, 17)
 PATIENCE = np.linspace(0.86, 1.0, 8)
+LEAST_CHANGE = 0.6
+CANDIDATES = 2
+THINNINGS = 6
 ROUNDS = 5
-SWEEPS = 6
+SWEEPS = 4
 SAMPLE = 24
+LAST_ROUNDS = 30
+FOLDED = 1.03
+"""What rings too close to each other count as: more than is allowed."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -59,22 +70,10 @@ class RingRow:
     """
 
     where: Array
-    counts: NDArray[np.int64]
-
-    @property
-    def triangles(self) -> int:
-        """How many triangles the strips between the rings have."""
-        several = np.where(self.counts > 1, self.counts, 0)
-        return int((several[:-1] + several[1:]).sum())
+    counts: Counts
 
 
-def chord_measure(curve: Meridian) -> float:
-    """Return ``∫ sqrt|K| dA`` over the surface that a curve turns [mm], K being the Gaussian curvature."""
-    where, density = _density(curve)
-    return float(np.trapezoid(density[0] * density[1], where))
-
-
-def forming_rings(surface: TurnedCurve, spread: float, *, start: int, end: int) -> RingRow:
+def forming_rings(surface: TurnedCurve, spread: float, *, start: int, end: int, ease: float = 1.0) -> RingRow:
     """Return the fewest rings and vertices that keep within a spread of deviations.
 
     Parameters
@@ -85,179 +84,194 @@ def forming_rings(surface: TurnedCurve, spread: float, *, start: int, end: int) 
         Difference allowed between the largest and the smallest deviation of a facet with corners on the surface [mm].
     start, end : int
         Least count of the first ring (0 for a pole) and of the last one.
+    ease : float
+        Part of the spread that the last strip may use.
 
     Returns
     -------
     RingRow
         Rings whose facets keep the spread.
     """
-    goal = radius = sqrt(2.0 * spread)
-    best: RingRow | None = None
+    radius = sqrt(2.0 * spread)
+    task = _Task(surface, Metric.of(surface.curve, radius), spread, (start, end), ease)
+    plans = sorted((_ended(task, plan, radius) for plan in _marches(task, radius)), key=triangle_count)[:CANDIDATES]
+    search = _Search(radius)
     for _ in range(ROUNDS):
-        row, found = _levelled(surface, _fewest(_Metric.of(surface.curve, goal), radius, start, end))
-        if found <= spread and (best is None or row.triangles < best.triangles):
-            best = row
-        change = sqrt(spread / found) * 0.999 if found > 0.0 else 1.0
-        if best is not None and 0.99 < change < 1.02:
+        thinned = [(_thinned(task, plan, search.radius), plan) for plan in plans]
+        counts, plan = min(thinned, key=lambda pair: triangle_count(pair[0]))
+        plans = [plan]
+        if search.settled(*_levelled(task, counts, search.radius)):
             break
-        radius *= min(max(change, 0.5), 1.1)
-    while best is None:
-        radius *= 0.93
-        row, found = _levelled(surface, _fewest(_Metric.of(surface.curve, goal), radius, start, end))
-        best = row if found <= spread else None
-    return best
-
-
-def _density(curve: Meridian) -> tuple[Array, tuple[Array, Array]]:
-    """Return arc lengths with ``du/ds`` and ``c`` there."""
-    grids = [np.linspace(start, end, GRID // (len(curve.breaks) - 1) + 2) for start, end in pairwise(curve.breaks)]
-    where = np.unique(np.concatenate(grids))
-    around = np.maximum(curve.radius(where), 0.0) * np.abs(np.sin(curve.slope(where)))
-    return where, (np.sqrt(np.abs(curve.curvature(where))), 2.0 * pi * np.sqrt(around))
+    return search.best or _one_band(task, radius)
 
 
 @dataclass(frozen=True, eq=False)
-class _Metric:
-    """The circle at even steps of the meridian's length, both in the metric of the chord error."""
+class _Task:
+    """What rings are wanted for; ``ends`` are the least counts of the first and the last ring."""
 
-    span: float
-    circle: Array
-    along: tuple[Array, Array]
-
-    @classmethod
-    def of(cls, curve: Meridian, radius: float) -> _Metric:
-        where, (along, around) = _density(curve)
-        # A flat stretch is given a trace of length, so that it counts as less than a strip.
-        along = np.maximum(along, 0.3 * radius / (curve.end - curve.start))
-        run = np.concatenate([[0.0], np.cumsum(0.5 * (along[1:] + along[:-1]) * np.diff(where))])
-        even = np.linspace(0.0, run[-1], GRID + 1)
-        return cls(float(run[-1]), np.interp(even, run, np.maximum(around, 1e-6 * radius)), (run, where))
-
-    def around(self, place: Array) -> tuple[Array, Array]:
-        """Return the circle at places, and how fast it grows."""
-        at = np.clip(place * (GRID / self.span), 0.0, GRID - 1e-9)
-        index = at.astype(np.intp)
-        rise = self.circle[index + 1] - self.circle[index]
-        return self.circle[index] + (at - index) * rise, rise * (GRID / self.span)
-
-    def lengths(self, places: Array) -> Array:
-        """Return arc lengths [mm] of places in the metric."""
-        return np.asarray(np.interp(places, *self.along))
-
-    def places(self, where: float) -> float:
-        """Return the place in the metric of an arc length [mm]."""
-        return float(np.interp(where, self.along[1], self.along[0]))
+    surface: TurnedCurve
+    metric: Metric
+    spread: float
+    ends: tuple[int, int]
+    ease: float
 
 
-def _isosceles(side: Array, radius: float) -> Array:
-    """Return how high isosceles triangles over a side may be: ``R + sqrt(R² − a²/4)``; 0 where none may."""
-    room = radius**2 - 0.25 * side * side
-    return np.where(room >= 0.0, radius + np.sqrt(np.maximum(room, 0.0)), 0.0)
+class _Search:
+    """The search for the largest circumradius whose rings keep the spread."""
+
+    def __init__(self, radius: float) -> None:
+        self.radius = radius
+        self.best: RingRow | None = None
+        self._good, self._bad = 0.0, np.inf
+
+    def settled(self, row: RingRow, excess: float) -> bool:
+        """Take rings and their spread, as a part of what is allowed; return whether better ones need no search."""
+        if excess <= 1.0:
+            self._good = self.radius
+            if self.best is None or triangle_count(row.counts.tolist()) < triangle_count(self.best.counts.tolist()):
+                self.best = row
+        else:
+            self._bad = min(self._bad, self.radius)
+        change = min(max(0.9995 / sqrt(max(excess, 1e-9)), 0.5), 1.1)
+        self.radius *= change
+        if self._good and self._bad < np.inf and not self._good < self.radius < self._bad:
+            self.radius = sqrt(self._good * self._bad)
+        return self.best is not None and ((excess <= 1.0 and change < 1.005) or self._bad < 1.004 * self._good)
 
 
-def _band_height(metric: _Metric, place: Array, count: Array, radius: float) -> tuple[Array, Array]:
-    """Return how high strips between rings of one count may be, and the sides on the outer ring."""
-    circle, growth = metric.around(place)
-    inner = circle / count
-    # Chords of the inner ring lie farther from the outer one than its arcs do, those of the outer one nearer.
-    most = height = np.maximum(_isosceles(inner, radius) - inner * inner * growth / (8.0 * circle), 0.0)
-    for _ in range(2):
-        beyond, growth = metric.around(place + height)
-        outer = beyond / count
-        height = np.minimum(most, _isosceles(outer, radius) + outer * outer * growth / (8.0 * beyond))
-    return height, outer
+def _one_band(task: _Task, radius: float) -> RingRow:
+    """Return rings of one count, for surfaces whose few rings fit no bands."""
+    circle = float(task.metric.circle.max())
+    count, strips = max(*task.ends, LEAST_COUNT, ceil(circle / (1.5 * radius))), ceil(task.metric.span / radius)
+    for _ in range(LAST_ROUNDS):
+        first = count if task.ends[0] else 1
+        row, excess = _levelled(task, [first] + [count] * max(strips, 1), radius)
+        if excess <= 1.0:
+            return row
+        count, strips = ceil(1.15 * count), ceil(1.15 * strips)
+    raise GeometryError(
+        f"no rings of facets were found that stray by less than {task.spread:g} mm on this forming surface; allowed: "
+        "a surface that is smooth against the chord error; do: allow a larger chord error or a smoother surface"
+    )
 
 
-def _change_height(metric: _Metric, place: Array, counts: tuple[Array, Array], radius: float) -> Array:
-    """Return how high strips between rings of two counts may be: their longest sides are diameters."""
-    inner = metric.around(place)[0] / counts[0]
-    outer = metric.around(place + radius)[0] / counts[1]
-    return np.sqrt(np.maximum(4.0 * radius**2 - 0.25 * (inner + outer) ** 2, 0.09 * radius**2))
+def triangle_count(counts: list[int]) -> int:
+    """Return how many triangles the strips between rings of given counts have."""
+    several = [0 if count == 1 else count for count in counts]
+    return 2 * sum(several) - several[0] - several[-1]
 
 
-def _marches(metric: _Metric, radius: float, start: int) -> list[list[tuple[float, int]]]:
+def _marches(task: _Task, radius: float) -> list[Plan]:
     """Return places and counts of rings for every habit, each strip as high as may be."""
+    metric = task.metric
     growth, patience = (part.ravel() for part in np.meshgrid(GROWTHS, PATIENCE))
-    first = _first_rings(metric, radius, start)
+    first = _first_rings(metric, radius, task.ends[0])
     place, count = (np.full(len(growth), first[-1][part]) for part in (0, 1))
     rows = []
     while (place < metric.span).any():
         more = np.maximum(count + 1, np.rint(count + growth * np.cbrt(2.0 * count * count))).astype(np.int64)
-        height, side = _band_height(metric, place, count, radius)
-        less = side * (count / more)
-        # What a side is worth is the area that triangles over it cover.
-        change = side * height < patience * less * _isosceles(less, radius)
+        height, side = metric.band_height(place, count, radius)
+        change = side * height < patience * worth(side * (count / more), radius)
+        # Nor may a band go on until its last ring leaves no room for the strip to the next.
+        change |= metric.change_height(place + height, count, more, radius) < LEAST_CHANGE * radius
         done = place >= metric.span
-        height = np.where(change, _change_height(metric, place, (count, more), radius), height)
+        height = np.where(change, metric.change_height(place, count, more, radius), height)
         count = np.where(change & ~done, more, count)
         place = place + height
         place = np.where(place > metric.span - 0.02 * height, metric.span, place)
         rows.append((place, np.where(done, 0, count)))
-    places, counts = np.array([row[0] for row in rows]), np.array([row[1] for row in rows])
-    kept = [counts[:, lane] > 0 for lane in range(len(growth))]
+    places, counts = (np.array([row[part] for row in rows]).reshape(len(rows), -1) for part in (0, 1))
+    kept = (counts > 0).sum(axis=0).tolist()
     return [
-        first + list(zip(places[rows, lane].tolist(), counts[rows, lane].tolist(), strict=True))
-        for lane, rows in enumerate(kept)
+        first + list(zip(places[:length, lane].tolist(), counts[:length, lane].tolist(), strict=True))
+        for lane, length in enumerate(kept)
     ]
 
 
-def _first_rings(metric: _Metric, radius: float, start: int) -> list[tuple[float, int]]:
+def _first_rings(metric: Metric, radius: float, start: int) -> Plan:
     """Return the pole and its fan, or the ring at the bore."""
     if start:
         needed = float(metric.around(np.zeros(1))[0][0]) / (1.6 * radius)
         return [(0.0, max(start, LEAST_COUNT, ceil(needed)))]
     count = LEAST_COUNT
-    wanted = metric.places(FIRST_RADIUS) * 1.03
+    wanted = metric.place(FIRST_RADIUS) * 1.03
     if 2.0 * radius * cos(pi / 24.0) > wanted:
         while 2.0 * radius * cos(pi / count) < wanted:
             count += 1
     return [(0.0, 1), (min(2.0 * radius * cos(pi / count), metric.span), count)]
 
 
-def _fewest(metric: _Metric, radius: float, start: int, end: int) -> tuple[_Metric, list[tuple[float, int]]]:
-    """Return the rings of the habit that needs the fewest triangles."""
-    rings = min(_marches(metric, radius, start), key=lambda row: sum(count for _, count in row) - 0.5 * row[-1][1])
-    return metric, _ended(metric, rings, radius, end)
+def _ended(task: _Task, plan: Plan, radius: float) -> list[int]:
+    """Return the counts of a plan with enough vertices on the last ring."""
+    metric, end = task.metric, task.ends[1]
+    counts = [count for _, count in plan]
+    if counts[-1] >= end:
+        return counts
+    place = np.array([metric.span - radius])
+    height = float(metric.change_height(place, np.array(counts[-1:]), np.array([end]), radius)[0])
+    # One more strip takes the change; what it covers is taken from those before it.
+    inner = [count for where, count in plan if where < metric.span - 1.2 * height]
+    return [*inner, counts[-1], end] if inner[-1] > 1 else [*inner, end]
 
 
-def _ended(metric: _Metric, rings: list[tuple[float, int]], radius: float, end: int) -> list[tuple[float, int]]:
-    """Return the rings with at least ``end`` vertices on the last one."""
-    place, count = rings[-1]
-    if count >= end:
-        return rings
-    if rings[-2][1] == 1:
-        return [rings[0], (place, end)]
-    near, counts = np.array([place - radius]), (np.array([count]), np.array([end]))
-    low = float(_change_height(metric, near, counts, radius)[0])
-    inner = [ring for ring in rings[:-1] if ring[0] < place - 1.2 * low] or rings[:1]
-    extra = [(place - low, count)] if place - low > inner[-1][0] else []
-    return [*inner, *extra, (place, end)]
+def _thinned(task: _Task, counts: list[int], radius: float) -> list[int]:
+    """Return counts made smaller in one proportion until the strips are as high as they may be."""
+    metric, ends = task.metric, task.ends
+    low, high, best = 0.8, 1.12, _denser(counts, 1.12)
+    even, needed = np.ones(len(counts) - 1), radius
+    for _ in range(THINNINGS):
+        share = 0.5 * (low + high)
+        fewer = [round(count * share) if count > FEW else count for count in counts]
+        fewer = [max(fewer[0], ends[0]), *fewer[1:-1], max(fewer[-1], ends[1])]
+        needed, places = metric.landing(fewer, even, guess=needed, closeness=1e-3)
+        if needed <= radius and not metric.folded(places, radius):
+            high, best = share, fewer
+        else:
+            low = share
+    return best
 
 
-def _levelled(surface: TurnedCurve, plan: tuple[_Metric, list[tuple[float, int]]]) -> tuple[RingRow, float]:
-    """Return rings moved so that every strip strays alike, and the largest spread of a strip [mm]."""
-    metric, rings = plan
-    places, counts = np.array([ring[0] for ring in rings]), np.array([ring[1] for ring in rings])
-    sample = Sample.of(Rings(counts, alternating(counts)), most=SAMPLE)
-    # A strip between two counts feels its height half as much.
-    power = np.where(counts[1:] == counts[:-1], 0.9, 1.4)
-    best, least = places, np.inf
+def _denser(counts: list[int], share: float = 1.1) -> list[int]:
+    return [ceil(count * share) if count > 1 else 1 for count in counts]
+
+
+def _levelled(task: _Task, counts: list[int], radius: float) -> tuple[RingRow, float]:
+    """Return rings placed so that every strip strays alike, and the largest spread as a part of what is allowed."""
+    surface, metric = task.surface, task.metric
+    number = np.array(counts)
+    sample = Sample.of(Rings(number, alternating(number)), most=SAMPLE)
+    factors, best, least = np.ones(len(counts) - 1), np.empty(0), np.inf
     for _ in range(SWEEPS):
-        low, high = strip_spans(surface, surface.curve.points(metric.lengths(places)), sample)
-        spreads = high - low
+        radius, places = metric.landing(counts, factors, guess=radius, closeness=1e-4)
+        low, high = strip_spans(surface, surface.curve.points(metric.arc_lengths(places)), sample)
+        spreads = (high - low) / task.spread
+        spreads[-1] /= task.ease
         most = float(spreads.max())
+        if metric.folded(places, 0.8 * radius):
+            most = max(most, FOLDED)
         if most < least:
             best, least = places, most
-        if most <= 0.0 or spreads.min() > 0.99 * most:
+        if spreads.min() > 0.985 * most:
             break
-        heights = np.diff(places) * (most / np.maximum(spreads, 0.1 * most)) ** power
-        run = np.concatenate([[0.0], np.cumsum(heights)])
-        places = run * (metric.span / run[-1])
-    return RingRow(metric.lengths(best), counts), least
+        factors *= np.sqrt(spreads.mean() / np.maximum(spreads, 0.1 * most))
+    return RingRow(metric.arc_lengths(best), number), least
 
 
-def alternating(counts: NDArray[np.int64], *, first: int = 0) -> NDArray[np.int64]:
-    """Return which rings are turned by half a step: each against the one before, where it has the same count."""
+def alternating(counts: Counts, *, first: int = 0) -> Counts:
+    """Return which rings are turned by half a step: each against the one before, where it has the same count.
+
+    Parameters
+    ----------
+    counts : ndarray of shape (k,)
+        Vertices of each ring.
+    first : int
+        Whether the first ring is turned.
+
+    Returns
+    -------
+    ndarray of shape (k,)
+        1 for a turned ring, else 0.
+    """
     turned = [first]
     for before, count in pairwise(counts.tolist()):
         turned.append(1 - turned[-1] if count == before else 0)

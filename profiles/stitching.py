@@ -1,8 +1,8 @@
 """Rings of vertices about an axis, and the triangles between neighbouring rings, joined by index.
 
 A ring is a circle divided evenly; a *pole* is a ring of one vertex on the axis. A ring begins at the azimuth 0, or half
-a step after it when it is *turned*. Between two rings each step of either makes one triangle, with the nearest vertex of
-the other ring: as many triangles as both have vertices, no vertex on an edge, and no seam.
+a step after it when it is *turned*. Between two rings each step of either makes one triangle, with the nearest vertex
+of the other ring: as many triangles as both have vertices, no vertex on an edge, and no seam.
 """
 
 from __future__ import annotations
@@ -93,14 +93,14 @@ class Sample:
 
     @classmethod
     def of(cls, rings: Rings, *, most: int | None = None) -> Sample:
-        """Return one period of every strip of rings, or at most ``most`` triangles spread over it."""
+        """Return one period of every strip of rings, or about ``most`` triangles of it that lean most and least."""
         firsts = rings.firsts
         parts = []
         for one, other in rings.pairs:
             first, second = rings.ring(one), rings.ring(other)
             part = stitch(first, second, share=gcd(first[0], second[0]) if 1 not in {first[0], second[0]} else 0)
             if most is not None and len(part) > most:
-                part = part[np.linspace(0, len(part) - 1, most).astype(np.intp)]
+                part = part[_extremes(part, first, second, most)]
             parts.append(np.where(part < first[0], firsts[one] + part, firsts[other] + part - first[0]))
         used, triangles = np.unique(np.concatenate(parts), return_inverse=True)
         number = np.searchsorted(firsts, used, side="right") - 1
@@ -111,6 +111,23 @@ class Sample:
     def vertices(self, points: Array) -> Array:
         """Return the vertices in space (n, 3) for rings at points (radius, height) (k, 2) [mm]."""
         return _turned(points[self.rings], self.angles)
+
+
+def _extremes(part: Rows, one: tuple[int, int], other: tuple[int, int], most: int) -> Rows:
+    """Return which triangles of a strip lean most and least, over the first ring and over the second."""
+    azimuth = np.where(
+        part < one[0], (2 * part + one[1]) / (2 * one[0]), (2 * (part - one[0]) + other[1]) / (2 * other[0])
+    )
+    over_other = part[:, 2] >= one[0]
+    apex = np.where(over_other, azimuth[:, 0], azimuth[:, 1])
+    base = np.where(over_other, azimuth[:, 1], azimuth[:, 0])
+    step = np.where(over_other, 0.5 / other[0], 0.5 / one[0])
+    lean = np.abs((base + step - apex + 0.5) % 1.0 - 0.5)
+    chosen = []
+    for rows in (np.flatnonzero(over_other), np.flatnonzero(~over_other)):
+        order = rows[np.argsort(lean[rows], kind="stable")]
+        chosen += [order[: most // 8], order[-(most // 2 - most // 8) :]]
+    return np.unique(np.concatenate(chosen))
 
 
 def _turned(points: Array, angles: Array) -> Array:
@@ -144,7 +161,7 @@ def stitch(one: tuple[int, int], other: tuple[int, int], *, share: int = 1) -> R
     middles_one = (2 * np.arange(steps[0]) + 1 + first_turned) * second
     middles_other = (2 * np.arange(steps[1]) + 1 + second_turned) * first
     of_other = np.argsort(np.concatenate([middles_one, middles_other]), kind="stable") >= steps[0]
-    here = np.cumsum(~of_other) - ~of_other
-    there = np.cumsum(of_other) - of_other
+    here: Rows = np.cumsum(~of_other) - ~of_other
+    there: Rows = np.cumsum(of_other) - of_other
     third = np.where(of_other, first + (there + 1) % second, (here + 1) % first)
     return np.column_stack([here % first, first + there % second, third])

@@ -72,7 +72,7 @@ class Surface(Protocol):
         """Return which way the distance bends between arc lengths [mm]: CONVEX, CONCAVE, SADDLE or MIXED."""
 
 
-def stretches(solid: Solid) -> tuple[Surface, ...]:
+def stretches(solid: Solid) -> tuple[TurnedCurve, *tuple[TurnedArc, ...]]:
     """Return the surfaces of a solid: the forming surface first, then the rest in order, the axis itself left out.
 
     Parameters
@@ -82,8 +82,8 @@ def stretches(solid: Solid) -> tuple[Surface, ...]:
 
     Returns
     -------
-    tuple of Surface
-        At least one.
+    tuple of TurnedCurve and TurnedArc
+        One curve and at least one line or arc.
     """
     radii = solid.rest.vertices[:, 0]
     on_axis = np.maximum(radii[:-1], radii[1:]) <= 1e-9 * solid.size
@@ -300,13 +300,17 @@ class TurnedArc:
         plane = np.column_stack([np.hypot(points[:, 0], points[:, 1]), points[:, 2]])
         reach = plane - first
         left = self.normals[0]
-        rise, square = reach @ left, (reach**2).sum(axis=1)
+        rise, square = reach @ left, np.einsum("kx,kx->k", reach, reach)
         root = np.sqrt(np.maximum(1.0 - 2.0 * bend * rise + bend**2 * square, 1e-300))
         # Distance to the circle without dividing by its curvature, so that a line is no special case.
         distance = (2.0 * rise - bend * square) / (1.0 + root)
         normal = (left - bend * reach) / root[:, None]
         beside = (reach @ start >= 0.0) & ((plane - last) @ end <= 0.0)
-        apart = np.where(beside, np.abs(distance), np.minimum(np.sqrt(square), np.hypot(*(plane - last).T)))
+        apart = np.where(
+            beside,
+            np.abs(distance),
+            np.minimum(np.sqrt(square), np.hypot(plane[:, 0] - last[0], plane[:, 1] - last[1])),
+        )
         bends = np.full(len(points), bend)
         return _contact(points, distance, (normal[:, 0], normal[:, 1]), bends, (np.zeros(len(points)), apart))
 

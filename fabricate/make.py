@@ -1,0 +1,121 @@
+"""Making a work package: write every file beside its place, read it back, prove it, and only then move it there."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from pathlib import Path
+
+from fabricate.drawing import lathe_drawing
+from fabricate.inspection import sag_columns, sag_table
+from fabricate.order import DRAWING, JOB, PACKAGE_FILES, PROGRAM, PROOF, SOLID, TABLE, Order
+from fabricate.proof import Proof, prove_files
+from outputs.dxf import write_drawing
+from outputs.gcode import write_program
+from outputs.package import staged, write_file
+from outputs.stl import write_stl
+from outputs.table import read_table, table_text
+from profiles.errors import DishwrightError, FormatError
+
+
+class ProofFailedError(DishwrightError):
+    """A written file is not within tolerance; nothing has been moved into place.
+
+    Parameters
+    ----------
+    proof : Proof
+        What was found.
+    """
+
+    def __init__(self, proof: Proof) -> None:
+        self.proof = proof
+        failed = [name for name, verdict in proof.files.items() if not verdict.passed]
+        super().__init__(f"the proof of {', '.join(failed)} failed: nothing was moved into place")
+
+
+@dataclass(frozen=True)
+class MadePackage:
+    """A work package that stands in its place.
+
+    Parameters
+    ----------
+    folder : Path
+        Where it stands.
+    proof : Proof
+        What was found when its files were read back.
+    """
+
+    folder: Path
+    proof: Proof
+
+
+def make_package(order: Order, folder: Path, *, replace: bool = False) -> MadePackage:
+    """Write, prove and put in place the work package of a job.
+
+    Parameters
+    ----------
+    order : Order
+        The job and its exact geometry.
+    folder : Path
+        Where the package goes: absent, empty, or a package of the same job that nobody has written in since.
+    replace : bool
+        Put it in the place of anything else too, which is kept beside it.
+
+    Returns
+    -------
+    MadePackage
+        The folder and the proof.
+
+    Raises
+    ------
+    JobError, GeometryError
+        If the job cannot be made; nothing is written.
+    ProofFailedError
+        If a written file is out of tolerance; nothing is moved into place.
+    WriteError
+        If the folder cannot be written or holds something else.
+    """
+    contents = _contents(order)
+    with staged(folder, replace=replace, same_package=lambda found: _is_same_package(found, order)) as place:
+        for name in order.file_names:
+            contents[name](place / name)
+        proof = prove_files(order, place)
+        if not proof.passed:
+            raise ProofFailedError(proof)
+        write_file(place / PROOF, json.dumps(proof.as_json(), indent=1, allow_nan=False) + "\n")
+    return MadePackage(folder, proof)
+
+
+def _contents(order: Order) -> Mapping[str, Callable[[Path], None]]:
+    """Return what writes each file; everything that a job can be refused for is computed before."""
+    job = order.job
+    drawing = lathe_drawing(order.chain, order.forming_arcs.path, job)
+    mesh = order.mesh
+    program = order.turning_plan.program if job.turning is not None else None
+    table = sag_columns(sag_table(order.chain, job.units), order.sha256, order.tolerance)
+    return {
+        DRAWING: lambda path: write_drawing(drawing, path, version=job.drawing.version, entities=job.drawing.entities),
+        SOLID: lambda path: write_stl(mesh.vertices, mesh.triangles, path, label=f"{job.title} mm"),
+        PROGRAM: lambda path: write_file(path, write_program(program) if program else ""),
+        TABLE: lambda path: write_file(path, table_text(table)),
+        JOB: lambda path: write_file(path, order.text),
+    }
+
+
+def _is_same_package(folder: Path, order: Order) -> bool:
+    """Whether a folder holds a package of the same job and nothing of anybody's own, such as readings."""
+    strange = [entry for entry in folder.iterdir() if entry.name not in PACKAGE_FILES or not entry.is_file()]
+    if strange or not (folder / JOB).is_file():
+        return False
+    if (folder / JOB).read_bytes() != order.text.encode("utf-8"):
+        return False
+    return not (folder / TABLE).exists() or _is_unfilled(folder / TABLE)
+
+
+def _is_unfilled(table: Path) -> bool:
+    try:
+        columns = read_table(table)
+    except FormatError:
+        return False
+    return not any(value for name, values in columns.items() if name.startswith("reading") for value in values)

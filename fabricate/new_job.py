@@ -1,0 +1,89 @@
+"""A starter job from what was typed: each given value is checked by the reader before anything is written."""
+
+from __future__ import annotations
+
+import tomllib
+from collections.abc import Iterable, Mapping
+from typing import Any
+
+from fabricate.job import parse_job
+from fabricate.starter import JobValue, starter_gaps, starter_text
+from profiles.errors import JobError
+
+NAME = "new job"
+
+
+def settings(typed: Iterable[str]) -> dict[str, JobValue]:
+    """Return values by dotted key from texts such as ``forming.springback.law=none``.
+
+    Parameters
+    ----------
+    typed : iterable of str
+        ``KEY=VALUE``; a value that is not TOML is taken for a text.
+
+    Returns
+    -------
+    dict
+        Value by dotted key.
+
+    Raises
+    ------
+    JobError
+        If there is no ``=`` or no key.
+
+    Examples
+    --------
+    >>> settings(["turning.spindle_limit=500", "forming.springback.law=none"])
+    {'turning.spindle_limit': 500, 'forming.springback.law': 'none'}
+    """
+    found: dict[str, JobValue] = {}
+    for text in typed:
+        key, equals, value = text.partition("=")
+        if not equals or not key.strip():
+            raise JobError(
+                f'--set: value is "{text}"; allowed: KEY=VALUE, such as forming.springback.law=none; do: '
+                "write the key of the job file, =, and its value"
+            )
+        found[key.strip()] = _value(value.strip())
+    return found
+
+
+def _value(text: str) -> Any:
+    try:
+        return tomllib.loads(f"value = {text}")["value"]
+    except (tomllib.TOMLDecodeError, RecursionError):
+        return text
+
+
+def new_job(given: Mapping[str, JobValue], *, with_turning: bool) -> tuple[str, tuple[str, ...]]:
+    """Return a starter job and the keys that it still leaves to be stated.
+
+    Parameters
+    ----------
+    given : mapping
+        Value by dotted key.
+    with_turning : bool
+        Lay out the table for a turning program.
+
+    Returns
+    -------
+    text : str
+        The commented job file.
+    gaps : tuple of str
+        Dotted keys.
+
+    Raises
+    ------
+    JobError
+        If a given key or value is not allowed.
+    """
+    tables = ("turning",) if with_turning else ()
+    text, gaps = starter_text(given, tables=tables), starter_gaps(given, tables=tables)
+    try:
+        parse_job(text, name=NAME)
+    except JobError as error:
+        # A starter job has gaps: only what is said of the values that were given counts.
+        said = [line for line in str(error).splitlines() if line.split(": ")[1] in given]
+        if said:
+            raise JobError("\n".join(said)) from error
+    return text, gaps

@@ -1,0 +1,186 @@
+"""All rings of a solid's surface in the order of the walk: forming surface, edge, land, outer side, base, bore.
+
+Neighbouring stretches share the ring at their joint, so that no vertex ever lies on an edge. A plane asks for no count
+of its own; a cylinder or cone for the count that holds the sagitta of its circle's chords; an arc, a piece of a torus,
+for nearly equilateral triangles.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from math import acos, ceil, pi, sqrt
+
+import numpy as np
+from numpy.typing import NDArray
+
+from profiles.rings import LEAST_COUNT, alternating, forming_rings
+from profiles.stitching import Rings
+from profiles.surfaces import SADDLE, Surface, TurnedArc, TurnedCurve
+
+Array = NDArray[np.float64]
+Rows = NDArray[np.intp]
+
+TANGENT = 0.2
+"""Turn [rad] at a joint under which two stretches count as tangent."""
+
+EASE = 0.97
+"""Part of the spread that the forming surface's last strip may use, for the edge shares its ring."""
+
+
+@dataclass(frozen=True, eq=False)
+class Chain:
+    """The rings of a closed surface.
+
+    Parameters
+    ----------
+    surfaces : tuple of Surface
+        The stretches; the first is the forming surface.
+    rings : Rings
+        Counts and phases of the rings.
+    points : ndarray of shape (k, 2)
+        Radius and height of each ring, on the exact surface [mm].
+    owners : ndarray of shape (s,)
+        Number of the surface that each strip belongs to.
+    """
+
+    surfaces: tuple[Surface, ...]
+    rings: Rings
+    points: Array
+    owners: Rows
+
+
+@dataclass(frozen=True, eq=False)
+class _Stretch:
+    """Rings of one stretch after its first: where they are, their counts, and whether they turn against each other."""
+
+    points: Array
+    counts: list[int]
+    turning: bool
+
+
+def chain_rings(
+    surfaces: tuple[TurnedCurve, *tuple[TurnedArc, ...]], *, forming_spread: float, body_spreads: Array
+) -> Chain:
+    """Return the rings of a solid's surface.
+
+    Parameters
+    ----------
+    surfaces : tuple of TurnedCurve and TurnedArc
+        Forming surface and the rest, in order round the half section.
+    forming_spread : float
+        Difference allowed between largest and smallest deviation on the forming surface, corners being on it [mm].
+    body_spreads : ndarray of shape (len(surfaces) - 1,)
+        The same for each stretch of the rest [mm].
+
+    Returns
+    -------
+    Chain
+        Ends in a pole, or in the ring where it began on a bored solid.
+    """
+    forming, *body = surfaces
+    bored = float(forming.curve.radius(forming.curve.start)) > 1e-9 * float(forming.curve.radius(forming.curve.end))
+    needs = [_need(part, spread) for part, spread in zip(body, body_spreads.tolist(), strict=True)]
+    tangent = _tangent(forming, body[0])
+    row = forming_rings(
+        forming,
+        forming_spread,
+        start=max(needs[-1], LEAST_COUNT) if bored else 0,
+        end=0 if tangent else needs[0],
+        ease=EASE if tangent else 1.0,
+    )
+    parts = [_Stretch(forming.curve.points(row.where), row.counts.tolist(), turning=True)]
+    if not bored:
+        parts[0].points[0, 0] = 0.0
+    last = parts[0].counts[0] if bored else 1
+    for number, part in enumerate(body):
+        joint = _joint_count(body, needs, number, last)
+        split = number == 0 and tangent
+        parts.append(_stretch(part, (parts[-1].counts[-1], needs[number], joint), float(body_spreads[number]), split))
+    return _joined(surfaces, parts, bored)
+
+
+def _joined(surfaces: tuple[Surface, ...], parts: list[_Stretch], bored: bool) -> Chain:  # noqa: FBT001
+    points = np.concatenate([part.points for part in parts])
+    counts = np.array([count for part in parts for count in part.counts])
+    turned = alternating(np.array(parts[0].counts)).tolist()
+    for part in parts[1:]:
+        own = counts[len(turned) - 1 : len(turned) + len(part.counts)]
+        turned += (alternating(own, first=turned[-1]) if part.turning else _kept(own, turned[-1]))[1:].tolist()
+    owners = np.repeat(np.arange(len(parts)), [len(part.counts) - (part is parts[0]) for part in parts])
+    if bored:
+        points, counts, turned = points[:-1], counts[:-1], turned[:-1]
+    return Chain(surfaces, Rings(counts, np.array(turned), closed=bored), points, owners)
+
+
+def _kept(counts: NDArray[np.int64], first: int) -> NDArray[np.int64]:
+    """Return phases that stay as they are from ring to ring of the same count."""
+    same = np.cumprod(counts == counts[0])
+    return np.where(same > 0, first, 0)
+
+
+def _tangent(forming: TurnedCurve, part: TurnedArc) -> bool:
+    normal = forming.curve.normals(forming.curve.end)
+    first = part.normals[0]
+    return abs(float(normal[0] * first[1] - normal[1] * first[0])) < TANGENT and float(normal @ first) > 0.0
+
+
+def _is_plane(part: TurnedArc) -> bool:
+    return not part.curvature and max(abs(float(normal[0])) for normal in part.normals) < 1e-9
+
+
+def _need(part: TurnedArc, spread: float) -> int:
+    """Return the least count of a stretch's rings."""
+    if _is_plane(part):
+        return LEAST_COUNT
+    if part.curvature:
+        return max(LEAST_COUNT, ceil(_circle(part) / (1.85 * sqrt(2.0 * spread))))
+    radius = max(float(end[0]) for end in part.ends)
+    across = abs(float(part.normals[0][0]))
+    return max(LEAST_COUNT, ceil(pi / acos(max(1.0 - 0.98 * spread / (across * radius), 0.0))))
+
+
+def _circle(part: TurnedArc) -> float:
+    """Return the largest circle of an arc's surface, in the metric of the chord error."""
+    shares = np.linspace(0.0, 1.0, 33)
+    radii = part.path.along(part.number, shares)[:, 0]
+    turn = float(part.path.turns[part.number])
+    tangent = part.path.tangents[0][part.number]
+    across = np.sin(np.arctan2(tangent[1], tangent[0]) + shares * turn)
+    return 2.0 * pi * sqrt(float(np.abs(radii * across).max()))
+
+
+def _joint_count(body: list[TurnedArc], needs: list[int], number: int, last: int) -> int:
+    """Return the least count of the ring where a stretch of the rest ends."""
+    if number == len(body) - 1:
+        return last
+    # A bore's lower ring has as many vertices as its upper one, which is the forming surface's first.
+    if number == len(body) - 2 and last > 1 and not _is_plane(body[-1]):
+        return max(last, needs[number])
+    return max(needs[number] if not _is_plane(body[number]) else 0, needs[number + 1])
+
+
+def _stretch(part: TurnedArc, counts: tuple[int, int, int], spread: float, split: bool) -> _Stretch:  # noqa: FBT001
+    """Return the rings of one stretch after its first; ``counts`` are of the first ring, least inside, and the last."""
+    first, need, last = counts
+    if not part.curvature:
+        # On a cylinder both rings have the same count where they can.
+        end = last if last == 1 or _is_plane(part) else max(first, last)
+        return _Stretch(part.ends[1][None, :], [end], turning=False)
+    inside = max(first, need)
+    shares = _arc_shares(part, inside, spread, split=split)
+    ends = max(inside, last) if last > 1 else 1
+    return _Stretch(part.path.along(part.number, shares), [inside] * (len(shares) - 1) + [ends], turning=True)
+
+
+def _arc_shares(part: TurnedArc, count: int, spread: float, *, split: bool) -> Array:
+    """Return where on an arc its rings lie after the first, as shares of its length."""
+    radius = sqrt(2.0 * spread)
+    side = min(_circle(part) / count, 1.9 * radius)
+    saddle = part.kinds(np.zeros(1), np.zeros(1))[0] == SADDLE
+    # On a saddle the deviations to both sides add up: of the side, and of the strip's height.
+    room = 4.0 * radius**2 - 0.75 * side**2 if saddle else (radius + sqrt(radius**2 - 0.25 * side**2)) ** 2
+    bend = abs(part.curvature)
+    strips = max(1, ceil(abs(float(part.path.turns[part.number])) / sqrt(bend * max(room, 0.25 * radius**2))))
+    shares = np.arange(1, strips + 1) / strips
+    # Where the bend changes its side, a lower strip leaves room for both.
+    return np.concatenate([[0.3 / strips], shares]) if split else shares
