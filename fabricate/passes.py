@@ -167,6 +167,7 @@ class Passes:
             path = path.reversed()
             start = path.vertices[0]
             yield Rapid(setup.home[0], start[1])
+            yield Rapid(max(setup.off, float(start[0])), start[1])
             yield Feed(start[0], start[1], 0.0, feed)
             yield from _feeds(path, feed)
             yield Feed(0.0, path.vertices[-1][1] + LIFT, 0.0, feed)

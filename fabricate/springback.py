@@ -14,8 +14,6 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.interpolate import PchipInterpolator
-from scipy.optimize import brentq
 
 from fabricate.job_keys import Springback
 from profiles.errors import GeometryError, JobError
@@ -181,6 +179,8 @@ def percent_of(part: ReleasedFace, stated: Springback) -> float:
 
 
 def _solved(excess: Callable[[float], float], key: str, value: float) -> float:
+    from scipy.optimize import brentq
+
     low, high = LEAST_PERCENT, MOST_PERCENT
     try:
         at_low, at_high = excess(low), excess(high)
@@ -206,6 +206,8 @@ def rim_slope_loss(part: ReleasedFace, springback: CurvatureMap) -> float:
 
 def table_over_radius(radii: Array, values: Array) -> Callable[[Array], Array]:
     """Return a table as a function of the radius [mm]: PCHIP between its rows, constant beyond them."""
+    from scipy.interpolate import PchipInterpolator
+
     if len(radii) == 1:
         return lambda radius: np.full_like(radius, values[0])
     inside = PchipInterpolator(radii, values)

@@ -79,7 +79,7 @@ def facet_spans(surface: Surface, vertices: Array, triangles: Rows, *, divisions
             (low if kind == CONVEX else high)[here] = kind * bound
     here = np.flatnonzero(kinds == SADDLE)
     if len(here):
-        low[here], high[here] = _saddle(surface, corners[here], contact.gradient[triangles[here]])
+        low[here], high[here] = _saddle(surface, vertices, triangles[here], contact)
     here = np.flatnonzero(kinds == MIXED)
     if len(here):
         low[here], high[here] = _mixed(surface, corners[here], _Corners.of(contact, triangles[here], 1), divisions)
@@ -190,44 +190,53 @@ def _clipped(values: Array) -> Array:
     return np.clip(np.nan_to_num(values, nan=0.5, posinf=1.0, neginf=0.0), 0.0, 1.0)
 
 
-def _bent(surface: Surface, corners: Array, sides: Array, gradients: Array) -> Array:
-    """Return bounds of the distance's second derivative along each side of facets, ``|sᵀ H s|``, shape (m, 3).
+def _bent(surface: Surface, points: tuple[Array, Array], normals: tuple[Array, Array]) -> Array:
+    """Return bounds of the distance's second derivative along sides between two points each, ``|sᵀ H s|``.
 
     A side's part along the meridian changes steadily from one end to the other, so that it is largest at an end;
     a fifth is added for what the surface turns in between.
     """
     bend, hoop = surface.strongest
-    square = np.einsum("mcx,mcx->mc", sides, sides)
+    side = points[1] - points[0]
+    square = np.einsum("kx,kx->k", side, side)
     along = np.zeros_like(square)
-    for turn in (0, -1):
-        points, normals = np.roll(corners, turn, axis=1), np.roll(gradients, turn, axis=1)
-        radius = np.maximum(np.hypot(points[..., 0], points[..., 1]), 1e-300)
-        around = (points[..., 0] * sides[..., 1] - points[..., 1] * sides[..., 0]) / radius
-        along = np.maximum(along, square - around**2 - np.einsum("mcx,mcx->mc", normals, sides) ** 2)
+    for point, normal in zip(points, normals, strict=True):
+        radius = np.maximum(np.hypot(point[:, 0], point[:, 1]), 1e-300)
+        around = (point[:, 0] * side[:, 1] - point[:, 1] * side[:, 0]) / radius
+        along = np.maximum(along, square - around**2 - np.einsum("kx,kx->k", normal, side) ** 2)
     return np.asarray(1.2 * (bend * along + hoop * square))
 
 
-def _saddle(surface: Surface, corners: Array, gradients: Array) -> tuple[Array, Array]:
-    """Return the range of the distance over facets (m, 3, 3) on which it is a saddle: that over their edges."""
-    shares = np.arange(EDGE_PARTS) / EDGE_PARTS
-    sides = np.roll(corners, -1, axis=1) - corners
-    points = corners[:, :, None, :] + shares[None, None, :, None] * sides[:, :, None, :]
-    values = surface.touch(points.reshape(-1, 3)).distance.reshape(len(corners), -1)
-    between = most(_bent(surface, corners, sides, gradients)) / (8.0 * EDGE_PARTS**2)
-    return least(values) - between, most(values) + between
+def _saddle(surface: Surface, vertices: Array, triangles: Rows, contact: Contact) -> tuple[Array, Array]:
+    """Return the range of the distance over facets on which it is a saddle: that over their edges."""
+    ends = np.stack([triangles, np.roll(triangles, -1, axis=1)], axis=2).reshape(-1, 2)
+    ends.sort(axis=1)
+    _, first, edge = np.unique(ends[:, 0] * len(vertices) + ends[:, 1], return_index=True, return_inverse=True)
+    one, other = ends[first].T
+    shares = np.arange(1, EDGE_PARTS)[:, None, None] / EDGE_PARTS
+    points = vertices[one] + shares * (vertices[other] - vertices[one])
+    values = surface.distances(points.reshape(-1, 3)).reshape(len(shares), -1)
+    values = np.concatenate([values, contact.distance[one][None], contact.distance[other][None]])
+    bent = _bent(surface, (vertices[one], vertices[other]), (contact.gradient[one], contact.gradient[other]))
+    between = bent / (8.0 * EDGE_PARTS**2)
+    edges = edge.reshape(-1, 3)
+    return least((values.min(axis=0) - between)[edges]), most((values.max(axis=0) + between)[edges])
 
 
 def _mixed(surface: Surface, corners: Array, start: _Corners, divisions: int) -> tuple[Array, Array]:
     """Return the range of the distance over facets (m, 3, 3) on which its kind changes, by dividing them."""
-    sides = np.roll(corners, -1, axis=1) - corners
-    between = most(_bent(surface, corners, sides, start.gradients)) / 6.0
+    bent = [
+        _bent(surface, (corners[:, k - 1], corners[:, k]), (start.gradients[:, k - 1], start.gradients[:, k]))
+        for k in range(3)
+    ]
+    between = np.max(bent, axis=0) / 6.0
     low, high = least(start.values) - between, most(start.values) + between
     more = np.flatnonzero(between > 1e-3 * (high - low - 2.0 * between) + 1e-10)
     if not divisions or not len(more):
         return low, high
     spans = facet_spans(surface, *_quarters(corners[more]), divisions=divisions - 1)
-    low[more] = np.maximum(low[more], spans.low.reshape(-1, 4).min(axis=1))
-    high[more] = np.minimum(high[more], spans.high.reshape(-1, 4).max(axis=1))
+    low[more] = np.maximum(low[more], least(spans.low.reshape(-1, 4)))
+    high[more] = np.minimum(high[more], most(spans.high.reshape(-1, 4)))
     return low, high
 
 

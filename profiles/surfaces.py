@@ -68,6 +68,9 @@ class Surface(Protocol):
     def touch(self, points: Array) -> Contact:
         """Return what the surface is to points (k, 3) in space [mm]."""
 
+    def distances(self, points: Array) -> Array:
+        """Return the signed distances of points (k, 3) in space [mm]."""
+
     def kinds(self, first: Array, last: Array) -> Kinds:
         """Return which way the distance bends between arc lengths [mm]: CONVEX, CONCAVE, SADDLE or MIXED."""
 
@@ -142,7 +145,7 @@ class TurnedCurve:
             np.sign(np.where(np.abs(around) < 1e-9, 0.0, around)),
         )
 
-    @property
+    @cached_property
     def strongest(self) -> tuple[float, float]:
         """Largest curvature along the meridian and largest around the axis [1/mm]."""
         where, _, _ = self._bends
@@ -182,6 +185,10 @@ class TurnedCurve:
                 break
         along, distance, normal, bend = _gap(table, radius, height, where)
         return _contact(points, distance, normal, bend, (where, np.hypot(along, distance)))
+
+    def distances(self, points: Array) -> Array:
+        """Return the signed distances of points (k, 3) in space [mm]."""
+        return self.touch(points).distance
 
 
 @dataclass(frozen=True, eq=False)
@@ -278,7 +285,7 @@ class TurnedArc:
         """Signed curvature [1/mm], left positive."""
         return self._frame[2]
 
-    @property
+    @cached_property
     def strongest(self) -> tuple[float, float]:
         """Largest curvature along the meridian and largest around the axis [1/mm]."""
         radius = self.path.along(self.number, np.linspace(0.0, 1.0, 33))[:, 0].min()
@@ -296,23 +303,27 @@ class TurnedArc:
     def touch(self, points: Array) -> Contact:
         """Return what the surface is to points (k, 3) in space [mm]."""
         start, end, bend = self._frame
-        first, last = self.ends
-        plane = np.column_stack([np.hypot(points[:, 0], points[:, 1]), points[:, 2]])
-        reach = plane - first
-        left = self.normals[0]
-        rise, square = reach @ left, np.einsum("kx,kx->k", reach, reach)
+        last = self.ends[1]
+        reach, distance, root = self._gap(points)
+        across, up = self.normals[0]
+        normal = ((across - bend * reach[0]) / root, (up - bend * reach[1]) / root)
+        ahead = (reach[0] + self.ends[0][0] - last[0], reach[1] + self.ends[0][1] - last[1])
+        beside = (reach[0] * start[0] + reach[1] * start[1] >= 0.0) & (ahead[0] * end[0] + ahead[1] * end[1] <= 0.0)
+        apart = np.where(beside, np.abs(distance), np.minimum(np.hypot(*reach), np.hypot(*ahead)))
+        return _contact(points, distance, normal, np.full(len(points), bend), (np.zeros(len(points)), apart))
+
+    def distances(self, points: Array) -> Array:
+        """Return the signed distances of points (k, 3) in space [mm]."""
+        return self._gap(points)[1]
+
+    def _gap(self, points: Array) -> tuple[tuple[Array, Array], Array, Array]:
+        """Return the way from the first point (radius, height), the signed distance, and a root that both need."""
+        first, (across, up), bend = self.ends[0], self.normals[0], self.curvature
+        reach = np.hypot(points[:, 0], points[:, 1]) - first[0], points[:, 2] - first[1]
+        rise, square = reach[0] * across + reach[1] * up, reach[0] ** 2 + reach[1] ** 2
         root = np.sqrt(np.maximum(1.0 - 2.0 * bend * rise + bend**2 * square, 1e-300))
         # Distance to the circle without dividing by its curvature, so that a line is no special case.
-        distance = (2.0 * rise - bend * square) / (1.0 + root)
-        normal = (left - bend * reach) / root[:, None]
-        beside = (reach @ start >= 0.0) & ((plane - last) @ end <= 0.0)
-        apart = np.where(
-            beside,
-            np.abs(distance),
-            np.minimum(np.sqrt(square), np.hypot(plane[:, 0] - last[0], plane[:, 1] - last[1])),
-        )
-        bends = np.full(len(points), bend)
-        return _contact(points, distance, (normal[:, 0], normal[:, 1]), bends, (np.zeros(len(points)), apart))
+        return reach, (2.0 * rise - bend * square) / (1.0 + root), root
 
 
 def _kind(along_least: float, along_most: float, around_least: float, around_most: float) -> int:
