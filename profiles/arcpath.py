@@ -160,9 +160,7 @@ class ArcPath:
             Points in order [mm], every vertex among them.
         """
         pieces = [self.vertices[:1]]
-        for index in range(len(self)):
-            turn = abs(self.turns[index])
-            curvature = abs(self.curvatures[index])
+        for index, (turn, curvature) in enumerate(zip(np.abs(self.turns), np.abs(self.curvatures), strict=True)):
             step = np.sqrt(8.0 * sagitta / curvature) if curvature else np.inf
             count = max(1, int(np.ceil(turn / max(step * curvature, 1e-9)))) if curvature else 1
             pieces.append(self.along(index, np.arange(1, count + 1) / count))

@@ -246,9 +246,7 @@ class Meridian:
         def values(where: Array) -> Array:
             radius, height, slope = self._values(where)
             there = slope - np.arcsin(change(where))
-            return np.stack(
-                [radius + distance(where) * np.sin(there), height - distance(where) * np.cos(there), there]
-            )
+            return np.stack([radius + distance(where) * np.sin(there), height - distance(where) * np.cos(there), there])
 
         def speed(where: Array) -> Array:
             lean = np.sqrt(1.0 - change(where) ** 2)

@@ -84,6 +84,10 @@ def _public_functions() -> Iterator[tuple[str, ast.FunctionDef]]:
                     yield f"{name}.{function.name}", function
 
 
+def _starred(function: ast.FunctionDef) -> list[ast.arg]:
+    return [function.args.vararg] if function.args.vararg else []
+
+
 PUBLIC = dict(_public_functions())
 
 
@@ -95,12 +99,14 @@ def test_public_functions_are_documented_with_whole_words(name: str) -> None:
     assert not [argument for argument in arguments if LETTERS_OF_FORMULAS.match(argument)]
 
 
-@pytest.mark.parametrize("name", [name for name, function in PUBLIC.items() if "Parameters\n" in ast.get_docstring(function)])
+@pytest.mark.parametrize(
+    "name", [name for name, function in PUBLIC.items() if "Parameters\n" in ast.get_docstring(function)]
+)
 def test_documented_parameters_are_the_parameters(name: str) -> None:
     function = PUBLIC[name]
     text = (ast.get_docstring(function) or "").split("Parameters\n----------\n")[1].split("\n\n")[0]
     documented = [part for line in re.findall(r"^(\w[\w, ]*) :", text, re.MULTILINE) for part in line.split(", ")]
-    arguments = [argument.arg for argument in (*function.args.args, *function.args.kwonlyargs)]
+    arguments = [argument.arg for argument in (*function.args.args, *_starred(function), *function.args.kwonlyargs)]
     assert documented == [argument for argument in arguments if argument not in {"self", "cls"}]
 
 
