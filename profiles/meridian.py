@@ -262,8 +262,9 @@ class Meridian:
         (room,) = resolve(lambda where: (1.0 - self.curvature(where) * shift(where))[None], breaks, sizes=[1.0])
         where, least = room.smallest()
         if least <= 1e-9:
+            radius = abs(float(self.radius(where)))
             raise GeometryError(
-                f"an offset of {abs(float(shift(where))):.6g} mm at radius {abs(float(self.radius(where))):.6g} mm is not "
+                f"an offset of {abs(float(shift(where))):.6g} mm at radius {radius:.6g} mm is not "
                 f"smaller than the radius of curvature there, {1.0 / abs(float(self.curvature(where))):.6g} mm, "
                 "and folds the curve: use a thinner sheet or cover, or put the other face on the mould"
             )

@@ -2,7 +2,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import assume, given, settings
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from numpy.testing import assert_allclose
 
@@ -94,17 +94,15 @@ def test_any_job_makes_the_round_trip_or_is_refused(job: Job) -> None:
     chain = Chain(job.in_millimetres())
     try:
         mould = chain.mould
-        error = _round_trip_error(chain)
     except DishwrightError:
-        assume(False)
-        raise
-    assert error < 1e-9 * max(1.0, 1e-3 * mould.curve.end)
+        return
+    assert _round_trip_error(chain) < 1e-9 * max(1.0, 1e-3 * mould.curve.end)
 
 
 def test_the_contact_face_that_is_the_mirror_lies_on_the_mould_itself() -> None:
     chain = Chain(_job())
     # Only the coating comes off: the sheet lies behind the mirror.
-    foot = chain.forming_surface.nearest(chain.released.meridian.points(np.array([0.0, 150.0])) + [0.0, 0.02])
+    foot = chain.forming_surface.nearest(chain.released.meridian.points(np.array([0.0, 150.0])) + np.array([0.0, 0.02]))
     assert chain.vertex_gap == pytest.approx(0.02, abs=1e-12)
     assert foot[0] == pytest.approx(0.0, abs=1e-9)
 
