@@ -23,8 +23,10 @@ from profiles.face import Face
 from profiles.meridian import Meridian, arc_length_over_aperture
 from profiles.series import Series, merged_breaks, resolve
 
-ROUNDS = 30
+ROUNDS = 20
 SETTLED = 1e-11
+NEAR_ENOUGH = 1e-6
+SAMPLES = 201
 NEAREST_TO_CLOSING = 0.9999
 
 
@@ -167,20 +169,24 @@ class Chain:
     def _reflecting_face_over(self, contact: Meridian) -> Meridian:
         """Return the reflecting face over a forming surface: its own offset, as thick as it makes the sheet itself."""
         thickness = self.job.sheet.thickness
-        shift = self._shift(contact)
+        everywhere = np.linspace(contact.start, contact.end, SAMPLES)
+        shift, closest, nearest_face = self._shift(contact), np.inf, contact
         for _ in range(ROUNDS):
             face, run = contact.offset_source(shift)
             better = self._shift(face)
+            moved = float(np.abs(better(run(everywhere)) - shift(everywhere)).max())
+            if moved < closest:
+                closest, nearest_face = moved, face
+            if moved < SETTLED * thickness or moved > 1e3 * closest:
+                break
             breaks = merged_breaks(contact.breaks, run.solve(better.breaks), start=contact.start, end=contact.end)
-            before = shift(breaks)
-            moved = float(np.abs(better(run(breaks)) - before).max())
-            if moved < SETTLED * thickness:
-                return face
             shift = _followed(better, run, breaks, max(1e-4 * moved, 1e-13 * thickness))
-        raise GeometryError(
-            "the sheet's thickness over this mould does not settle: state it by a table (forming.thinning.law = "
-            '"stations")'
-        )
+        if closest > NEAR_ENOUGH * thickness:
+            raise GeometryError(
+                "the sheet's thickness over this mould does not settle: state it by a table (forming.thinning.law = "
+                '"stations")'
+            )
+        return nearest_face
 
     def _thickness(self, on_mould: Meridian) -> Series:
         sheet = FormedSheet(on_mould, self.released.meridian, self.job.sheet.thickness)

@@ -18,7 +18,7 @@ from fabricate.prove_papers import prove_job, prove_proof, prove_table
 from fabricate.prove_program import prove_program
 from fabricate.prove_solid import prove_solid
 from fabricate.verdict import FileVerdict, unreadable
-from profiles.errors import FormatError, JobError, WriteError
+from profiles.errors import FormatError, GeometryError, WriteError
 
 
 @dataclass(frozen=True)
@@ -102,11 +102,14 @@ def prove_package(order: Order, folder: Path) -> Proof:
 
     Raises
     ------
+    JobError, GeometryError
+        If the job cannot be made.
     WriteError
         If there is no such folder.
     """
     if not folder.is_dir():
         raise WriteError(f"{folder}: no such folder; allowed: the folder of a work package; do: check the name")
+    _ = order.exact_solid  # what the job itself is refused for is no fault of a file
     stray = (PROGRAM,) if PROGRAM not in order.file_names and (folder / PROGRAM).exists() else ()
     return _proof(order, folder, (*order.file_names, *stray, PROOF))
 
@@ -118,5 +121,5 @@ def _proof(order: Order, folder: Path, names: tuple[str, ...]) -> Proof:
 def _verdict(path: Path, order: Order) -> FileVerdict:
     try:
         return PROVERS[path.name](path, order)
-    except (FormatError, JobError) as error:
+    except (FormatError, GeometryError) as error:
         return unreadable(order.tolerance, str(error))

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from pathlib import Path
 from typing import Any
 
@@ -13,13 +13,15 @@ from numpy.typing import NDArray
 from fabricate.inspection import sag_columns, sag_table
 from fabricate.job import job_hash, parse_job
 from fabricate.order import JOB, Order
-from fabricate.verdict import FileVerdict, measured
+from fabricate.verdict import FileVerdict, measured, unreadable
 from outputs.table import Column, read_table
 from outputs.text_file import read_text
 from profiles.deviation import Deviation
-from profiles.errors import FormatError
+from profiles.errors import FormatError, JobError
 
 Array = NDArray[np.float64]
+
+READING = "reading"
 
 
 def prove_table(path: Path, order: Order) -> FileVerdict:
@@ -47,11 +49,14 @@ def prove_table(path: Path, order: Order) -> FileVerdict:
     if count < 2:
         raise FormatError(f"{path}: holds {count} stations; allowed: 2 or more; do: make the package again")
     table = sag_table(order.chain, order.job.units, stations=count)
-    columns = sag_columns(table, order.sha256, order.tolerance)
-    gaps = {column.name: _gaps(found, column, path) for column in columns if not column.name.startswith("reading")}
+    columns = sag_columns(table, _package_hash(path, order), order.tolerance)
+    gaps = {column.name: _gaps(found, column, path) for column in columns}
+    wrong = tuple(_column_findings(columns, gaps))
     unit = columns[1].name.removeprefix("radius")
     lean = np.radians(table.slope_deg)
     sag = gaps[f"part_sag{unit}"] * np.cos(lean) * order.unit
+    if not (np.isfinite(sag).all() and np.isfinite(gaps["slope_deg"]).all()):
+        return unreadable(order.tolerance, *wrong)
     worst, steepest = int(np.argmax(sag)), int(np.argmax(gaps["slope_deg"]))
     largest = Deviation(
         float(sag[worst]),
@@ -59,20 +64,35 @@ def prove_table(path: Path, order: Order) -> FileVerdict:
         float(np.radians(gaps["slope_deg"][steepest])),
         float(table.radius[steepest]) * order.unit,
     )
-    wrong = tuple(
-        f"column {column.name} differs from the job by {gaps[column.name].max():.6g}"
-        for column in columns
-        if column.name in gaps and gaps[column.name].max() > 0.51 * 10.0**-column.decimals
-    )
     return measured(largest, order.tolerance, 0.0, wrong)
 
 
+def _package_hash(table: Path, order: Order) -> str:
+    """Return the hash of the job file beside a table, which may be of an earlier version; without one, the job's."""
+    try:
+        return job_hash(read_text(table.with_name(JOB)))
+    except FormatError:
+        return order.sha256
+
+
+def _column_findings(columns: tuple[Column, ...], gaps: Mapping[str, Array]) -> Iterator[str]:
+    for column in columns:
+        gap = gaps[column.name].max()
+        if column.is_text and gap > 0.0:
+            yield f"column {column.name} is not {column.values[0]} throughout, as the job asks"
+        elif gap > 0.51 * 10.0**-column.decimals:
+            said = f"differs from the job by {gap:.6g}" if np.isfinite(gap) else "has a cell that is no number"
+            yield f"column {column.name} {said}"
+
+
 def _gaps(found: Mapping[str, tuple[str, ...]], column: Column, path: Path) -> Array:
-    """Return how far each value of a column is from what it should be; an unequal text counts as far as can be."""
+    """Return how far each value of a column is from what it should be: infinite for an unequal text, 0 for readings."""
     if column.name not in found:
         raise FormatError(
             f"{path}: has no column {column.name}; allowed: the columns of a sag table; do: make it again"
         )
+    if column.name.startswith(READING):
+        return np.zeros(len(column.values))
     pairs = zip(found[column.name], column.values, strict=True)
     return np.array([_gap(typed, wanted) for typed, wanted in pairs])
 
@@ -105,11 +125,12 @@ def prove_job(path: Path, order: Order) -> FileVerdict:
     Raises
     ------
     FormatError
-        If the file cannot be read.
-    JobError
-        If it is no job.
+        If the file cannot be read, or is no job.
     """
-    same = parse_job(read_text(path), name=str(path)) == order.job
+    try:
+        same = parse_job(read_text(path), name=str(path)) == order.job
+    except JobError as error:
+        raise FormatError(str(error)) from error
     others = () if same else ("is another job than the one that was asked for: prove it against its own job file",)
     return FileVerdict(0.0, 0.0, 0.0, order.tolerance, others)
 

@@ -218,7 +218,8 @@ def proof_lines(proof: Proof) -> list[str]:
 def _figures(verdict: FileVerdict) -> str:
     if verdict.normal_mm is None or verdict.at_radius_mm is None or verdict.slope_mrad is None:
         return f"{'not measured':>36}"
-    return f"{verdict.normal_mm:>9.6f} mm{verdict.at_radius_mm:>9.2f} mm{verdict.slope_mrad:>7.3f} mrad"
+    radius, lean = f" {verdict.at_radius_mm:.2f}", f" {verdict.slope_mrad:.3f}"
+    return f"{verdict.normal_mm:>9.6f} mm{radius:>9} mm{lean:>7} mrad"
 
 
 def _mould_lines(order: Order) -> list[str]:

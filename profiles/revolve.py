@@ -31,6 +31,9 @@ Facets = Literal["inside", "outside", "balanced"]
 MARGIN = 0.995
 """Part of the chord error that is used: the rest is left to whoever measures."""
 
+EASE = 0.97
+"""Part of the spread that the forming surface's last strip may use, for the edge shares its ring."""
+
 MOST_TRIANGLES = 4_000_000
 ROUNDS = 10
 
@@ -117,19 +120,21 @@ def revolve(solid: Solid, *, chord_error: float, facets: Facets = "balanced") ->
     room = _room(solid, chord_error)
     _check_number(triangle_limit(solid.curve, chord_error=room, facets=facets), chord_error)
     surfaces = _told_apart(solid)
-    forming, body = 1.0, np.ones(len(surfaces) - 1)
+    forming, ease, body = 1.0, EASE, np.ones(len(surfaces) - 1)
     for _ in range(ROUNDS):
         chain = chain_rings(
             surfaces,
             forming_spread=room * forming * (2.0 if facets == "balanced" else 1.0),
-            body_spreads=2.0 * room * body,
+            ease=ease,
+            body_spread=2.0 * room,
+            shares=body,
         )
         points, excess = _displaced(chain, facets, room)
         if excess.max() <= 1.0:
             return _mesh(solid, chain, points, chord_error)
-        # At the joint the edge takes over the forming surface's shift: what little is too much there is the latter's.
-        joint = excess[1] if excess[1] < 1.05 else 0.0
-        forming *= min(1.0, 0.998 / max(excess[0], joint))
+        forming *= min(1.0, 0.998 / excess[0])
+        # At the joint the edge takes over the forming surface's shift: what is too much there comes from both.
+        ease *= min(1.0, 0.97 / excess[1])
         body = np.where(excess[1:] > 1.0, np.minimum(0.93, 0.98 / excess[1:]) * body, body)
     raise GeometryError(
         f"no mesh was found that keeps a chord error of {chord_error:g} mm on this half section; allowed: stretches "

@@ -23,9 +23,6 @@ Rows = NDArray[np.intp]
 TANGENT = 0.2
 """Turn [rad] at a joint under which two stretches count as tangent."""
 
-EASE = 0.97
-"""Part of the spread that the forming surface's last strip may use, for the edge shares its ring."""
-
 
 @dataclass(frozen=True, eq=False)
 class Chain:
@@ -51,15 +48,19 @@ class Chain:
 
 @dataclass(frozen=True, eq=False)
 class _Stretch:
-    """Rings of one stretch after its first: where they are, their counts, and whether they turn against each other."""
+    """Rings of one stretch after its first: where they are, and their counts."""
 
     points: Array
     counts: list[int]
-    turning: bool
 
 
 def chain_rings(
-    surfaces: tuple[TurnedCurve, *tuple[TurnedArc, ...]], *, forming_spread: float, body_spreads: Array
+    surfaces: tuple[TurnedCurve, *tuple[TurnedArc, ...]],
+    *,
+    forming_spread: float,
+    ease: float,
+    body_spread: float,
+    shares: Array,
 ) -> Chain:
     """Return the rings of a solid's surface.
 
@@ -69,8 +70,12 @@ def chain_rings(
         Forming surface and the rest, in order round the half section.
     forming_spread : float
         Difference allowed between largest and smallest deviation on the forming surface, corners being on it [mm].
-    body_spreads : ndarray of shape (len(surfaces) - 1,)
-        The same for each stretch of the rest [mm].
+    ease : float
+        Part of it that the forming surface's last strip may use, where the edge shares its ring.
+    body_spread : float
+        The same for the rest [mm].
+    shares : ndarray of shape (len(surfaces) - 1,)
+        Part of it that the strips of each stretch of the rest may use.
 
     Returns
     -------
@@ -79,23 +84,25 @@ def chain_rings(
     """
     forming, *body = surfaces
     bored = float(forming.curve.radius(forming.curve.start)) > 1e-9 * float(forming.curve.radius(forming.curve.end))
-    needs = [_need(part, spread) for part, spread in zip(body, body_spreads.tolist(), strict=True)]
+    needs = [_need(part, body_spread) for part in body]
     tangent = _tangent(forming, body[0])
     row = forming_rings(
         forming,
         forming_spread,
         start=max(needs[-1], LEAST_COUNT) if bored else 0,
-        end=0 if tangent else needs[0],
-        ease=EASE if tangent else 1.0,
+        end=needs[0],
+        ease=ease if tangent else 1.0,
     )
-    parts = [_Stretch(forming.curve.points(row.where), row.counts.tolist(), turning=True)]
+    parts = [_Stretch(forming.curve.points(row.where), row.counts.tolist())]
     if not bored:
         parts[0].points[0, 0] = 0.0
     last = parts[0].counts[0] if bored else 1
     for number, part in enumerate(body):
         joint = _joint_count(body, needs, number, last)
         split = number == 0 and tangent
-        parts.append(_stretch(part, (parts[-1].counts[-1], needs[number], joint), float(body_spreads[number]), split))
+        parts.append(
+            _stretch(part, (parts[-1].counts[-1], needs[number], joint), body_spread * float(shares[number]), split)
+        )
     return _joined(surfaces, parts, bored)
 
 
@@ -105,7 +112,7 @@ def _joined(surfaces: tuple[Surface, ...], parts: list[_Stretch], bored: bool) -
     turned = alternating(np.array(parts[0].counts)).tolist()
     for part in parts[1:]:
         own = counts[len(turned) - 1 : len(turned) + len(part.counts)]
-        turned += (alternating(own, first=turned[-1]) if part.turning else _kept(own, turned[-1]))[1:].tolist()
+        turned += _kept(own, turned[-1])[1:].tolist()
     owners = np.repeat(np.arange(len(parts)), [len(part.counts) - (part is parts[0]) for part in parts])
     if bored:
         points, counts, turned = points[:-1], counts[:-1], turned[:-1]
@@ -113,7 +120,10 @@ def _joined(surfaces: tuple[Surface, ...], parts: list[_Stretch], bored: bool) -
 
 
 def _kept(counts: NDArray[np.int64], first: int) -> NDArray[np.int64]:
-    """Return phases that stay as they are from ring to ring of the same count."""
+    """Return phases that stay as they are from ring to ring of the same count.
+
+    On narrow stretches, chords of rings that turn against each other would cross.
+    """
     same = np.cumprod(counts == counts[0])
     return np.where(same > 0, first, 0)
 
@@ -132,11 +142,18 @@ def _need(part: TurnedArc, spread: float) -> int:
     """Return the least count of a stretch's rings."""
     if _is_plane(part):
         return LEAST_COUNT
-    if part.curvature:
-        return max(LEAST_COUNT, ceil(_circle(part) / (1.85 * sqrt(2.0 * spread))))
     radius = max(float(end[0]) for end in part.ends)
-    across = abs(float(part.normals[0][0]))
-    return max(LEAST_COUNT, ceil(pi / acos(max(1.0 - 0.98 * spread / (across * radius), 0.0))))
+    if part.curvature:
+        # Chords may not reach far into the stretch beside a narrow edge.
+        width = abs(float(part.ends[1][0] - part.ends[0][0]))
+        chords = _chords(radius, max(0.98 * spread, 0.3 * width))
+        return max(LEAST_COUNT, chords, ceil(_circle(part) / (1.95 * sqrt(2.0 * spread))))
+    return max(LEAST_COUNT, _chords(radius, 0.98 * spread / abs(float(part.normals[0][0]))))
+
+
+def _chords(radius: float, sagitta: float) -> int:
+    """Return how many chords of a circle stray by no more than a sagitta."""
+    return ceil(pi / acos(max(1.0 - sagitta / radius, 0.0)))
 
 
 def _circle(part: TurnedArc) -> float:
@@ -165,11 +182,11 @@ def _stretch(part: TurnedArc, counts: tuple[int, int, int], spread: float, split
     if not part.curvature:
         # On a cylinder both rings have the same count where they can.
         end = last if last == 1 or _is_plane(part) else max(first, last)
-        return _Stretch(part.ends[1][None, :], [end], turning=False)
+        return _Stretch(part.ends[1][None, :], [end])
     inside = max(first, need)
     shares = _arc_shares(part, inside, spread, split=split)
     ends = max(inside, last) if last > 1 else 1
-    return _Stretch(part.path.along(part.number, shares), [inside] * (len(shares) - 1) + [ends], turning=True)
+    return _Stretch(part.path.along(part.number, shares), [inside] * (len(shares) - 1) + [ends])
 
 
 def _arc_shares(part: TurnedArc, count: int, spread: float, *, split: bool) -> Array:
@@ -178,7 +195,7 @@ def _arc_shares(part: TurnedArc, count: int, spread: float, *, split: bool) -> A
     side = min(_circle(part) / count, 1.9 * radius)
     saddle = part.kinds(np.zeros(1), np.zeros(1))[0] == SADDLE
     # On a saddle the deviations to both sides add up: of the side, and of the strip's height.
-    room = 4.0 * radius**2 - 0.75 * side**2 if saddle else (radius + sqrt(radius**2 - 0.25 * side**2)) ** 2
+    room = 4.0 * radius**2 - side**2 if saddle else (radius + sqrt(radius**2 - 0.25 * side**2)) ** 2
     bend = abs(part.curvature)
     strips = max(1, ceil(abs(float(part.path.turns[part.number])) / sqrt(bend * max(room, 0.25 * radius**2))))
     shares = np.arange(1, strips + 1) / strips

@@ -180,7 +180,9 @@ def _marches(task: _Task, radius: float) -> list[Plan]:
         place = place + height
         place = np.where(place > metric.span - 0.02 * height, metric.span, place)
         rows.append((place, np.where(done, 0, count)))
-    places, counts = (np.array([row[part] for row in rows]).reshape(len(rows), -1) for part in (0, 1))
+    if not rows:
+        return [first]
+    places, counts = (np.array([row[part] for row in rows]) for part in (0, 1))
     kept = (counts > 0).sum(axis=0).tolist()
     return [
         first + list(zip(places[:length, lane].tolist(), counts[:length, lane].tolist(), strict=True))
@@ -191,8 +193,12 @@ def _marches(task: _Task, radius: float) -> list[Plan]:
 def _first_rings(metric: Metric, radius: float, start: int) -> Plan:
     """Return the pole and its fan, or the ring at the bore."""
     if start:
-        needed = float(metric.around(np.zeros(1))[0][0]) / (1.6 * radius)
-        return [(0.0, max(start, LEAST_COUNT, ceil(needed)))]
+        needed = max(ceil(float(metric.around(np.zeros(1))[0][0]) / (1.6 * radius)), LEAST_COUNT)
+        if start <= 1.2 * needed:
+            return [(0.0, max(start, needed))]
+        # A bore may ask for more than the forming surface does: one strip gets rid of it.
+        height = metric.change_height(np.zeros(1), np.array([start]), np.array([needed]), radius)
+        return [(0.0, start), (min(float(height[0]), metric.span), needed)]
     count = LEAST_COUNT
     wanted = metric.place(FIRST_RADIUS) * 1.03
     if 2.0 * radius * cos(pi / 24.0) > wanted:
@@ -210,8 +216,8 @@ def _ended(task: _Task, plan: Plan, radius: float) -> list[int]:
     place = np.array([metric.span - radius])
     height = float(metric.change_height(place, np.array(counts[-1:]), np.array([end]), radius)[0])
     # One more strip takes the change; what it covers is taken from those before it.
-    inner = [count for where, count in plan if where < metric.span - 1.2 * height]
-    return [*inner, counts[-1], end] if inner[-1] > 1 else [*inner, end]
+    inner = [count for where, count in plan[:-1] if where < metric.span - 1.2 * height] or counts[:1]
+    return [*inner, counts[-1], end] if inner[-1] > 1 or len(counts) > 2 else [1, end]
 
 
 def _thinned(task: _Task, counts: list[int], radius: float) -> list[int]:

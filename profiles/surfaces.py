@@ -302,28 +302,51 @@ class TurnedArc:
 
     def touch(self, points: Array) -> Contact:
         """Return what the surface is to points (k, 3) in space [mm]."""
-        start, end, bend = self._frame
-        last = self.ends[1]
-        reach, distance, root = self._gap(points)
-        across, up = self.normals[0]
-        normal = ((across - bend * reach[0]) / root, (up - bend * reach[1]) / root)
-        ahead = (reach[0] + self.ends[0][0] - last[0], reach[1] + self.ends[0][1] - last[1])
-        beside = (reach[0] * start[0] + reach[1] * start[1] >= 0.0) & (ahead[0] * end[0] + ahead[1] * end[1] <= 0.0)
-        apart = np.where(beside, np.abs(distance), np.minimum(np.hypot(*reach), np.hypot(*ahead)))
-        return _contact(points, distance, normal, np.full(len(points), bend), (np.zeros(len(points)), apart))
+        distance, normal, bend, apart = self._foot(points)
+        return _contact(points, distance, normal, bend, (np.zeros(len(points)), apart))
 
     def distances(self, points: Array) -> Array:
         """Return the signed distances of points (k, 3) in space [mm]."""
-        return self._gap(points)[1]
+        if self.curvature:
+            return self._foot(points)[0]
+        (radius, height), (across, up) = self.ends[0], self.normals[0]
+        return np.asarray((np.hypot(points[:, 0], points[:, 1]) - radius) * across + (points[:, 2] - height) * up)
 
-    def _gap(self, points: Array) -> tuple[tuple[Array, Array], Array, Array]:
-        """Return the way from the first point (radius, height), the signed distance, and a root that both need."""
-        first, (across, up), bend = self.ends[0], self.normals[0], self.curvature
-        reach = np.hypot(points[:, 0], points[:, 1]) - first[0], points[:, 2] - first[1]
-        rise, square = reach[0] * across + reach[1] * up, reach[0] ** 2 + reach[1] ** 2
+    def _foot(self, points: Array) -> tuple[Array, tuple[Array, Array], Array, Array]:
+        """Return distances, normals and curvatures at the feet of points, and their ways to the stretch itself."""
+        start, end, bend = self._frame
+        radius = np.hypot(points[:, 0], points[:, 1])
+        from_first = radius - self.ends[0][0], points[:, 2] - self.ends[0][1]
+        from_last = radius - self.ends[1][0], points[:, 2] - self.ends[1][1]
+        before = from_first[0] * start[0] + from_first[1] * start[1]
+        behind = from_last[0] * end[0] + from_last[1] * end[1]
+        across, up = self.normals[0]
+        rise, square = from_first[0] * across + from_first[1] * up, from_first[0] ** 2 + from_first[1] ** 2
         root = np.sqrt(np.maximum(1.0 - 2.0 * bend * rise + bend**2 * square, 1e-300))
         # Distance to the circle without dividing by its curvature, so that a line is no special case.
-        return reach, (2.0 * rise - bend * square) / (1.0 + root), root
+        distance = (2.0 * rise - bend * square) / (1.0 + root)
+        normal = ((across - bend * from_first[0]) / root, (up - bend * from_first[1]) / root)
+        return self._run_on((before, behind), (distance, rise, from_last), normal)
+
+    def _run_on(
+        self,
+        beyond: tuple[Array, Array],
+        gaps: tuple[Array, Array, tuple[Array, Array]],
+        normal: tuple[Array, Array],
+    ) -> tuple[Array, tuple[Array, Array], Array, Array]:
+        """Let the stretch run on along its end tangents."""
+        before, behind = beyond
+        distance, rise, from_last = gaps
+        across, up = self.normals[1]
+        is_before, is_behind = before < 0.0, (behind > 0.0) & (before >= 0.0)
+        distance = np.where(is_before, rise, np.where(is_behind, from_last[0] * across + from_last[1] * up, distance))
+        aside = tuple(
+            np.where(is_before, first, np.where(is_behind, last, own))
+            for first, last, own in zip(*self.normals, normal, strict=True)
+        )
+        bend = np.where(is_before | is_behind, 0.0, self.curvature)
+        past = np.where(is_before, before, np.where(is_behind, behind, 0.0))
+        return distance, (aside[0], aside[1]), bend, np.hypot(past, distance)
 
 
 def _kind(along_least: float, along_most: float, around_least: float, around_most: float) -> int:
