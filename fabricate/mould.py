@@ -21,6 +21,9 @@ from profiles.meridian import Meridian
 
 Kind = Literal["male", "female"]
 
+TELLABLE = 1e-6
+"""An edge radius or a land that is smaller [mm] is none."""
+
 
 @dataclass(frozen=True, eq=False)
 class Mould:
@@ -126,10 +129,11 @@ def mould_around(curve: Meridian, kind: Kind, shape: job_keys.Mould) -> Mould:
     """
     end = curve.points(curve.end)
     slope = float(curve.slope(curve.end))
+    edge = shape.edge_radius if shape.edge_radius > TELLABLE else 0.0
     bore = 0.5 * shape.bore_diameter
     _check_bore(bore, float(end[0]), shape)
-    drop = shape.edge_radius * (1.0 - np.cos(slope))
-    tangent_radius = float(end[0] + shape.edge_radius * np.sin(slope))
+    drop = edge * (1.0 - np.cos(slope))
+    tangent_radius = float(end[0] + edge * np.sin(slope))
     outer = _outer_radius(tangent_radius, shape)
     land_height = float(end[1] + drop)
     sign = -1.0 if kind == "male" else 1.0
@@ -149,7 +153,7 @@ def mould_around(curve: Meridian, kind: Kind, shape: job_keys.Mould) -> Mould:
         _rim(np.array([end[0], sign * end[1] + shift]), slope, sign, (tangent_radius, outer, land)),
         _back(outer, land, base, (bore, sign * float(first[1]) + shift), shape),
         land_height,
-        shape.edge_radius,
+        edge,
     )
 
 
@@ -184,7 +188,7 @@ def _outer_radius(tangent_radius: float, shape: job_keys.Mould) -> float:
             f"mould.spigot_diameter: value is {shape.spigot_diameter:g} mm; allowed: at most the mould's outer "
             f"diameter, {2.0 * outer:.6g} mm; do: make the spigot smaller or the land wider"
         )
-    return outer
+    return outer if outer - tangent_radius > TELLABLE else tangent_radius
 
 
 def _rim(end: np.ndarray, slope: float, sign: float, land: tuple[float, float, float]) -> ArcPath | None:
@@ -192,7 +196,7 @@ def _rim(end: np.ndarray, slope: float, sign: float, land: tuple[float, float, f
     tangent_radius, outer, height = land
     vertices, bulges = [end], []
     for vertex, bulge in (((tangent_radius, height), -sign * np.tan(0.25 * slope)), ((outer, height), 0.0)):
-        if np.hypot(*(np.array(vertex) - vertices[-1])) > 1e-9:
+        if np.hypot(*(np.array(vertex) - vertices[-1])) > 0.0:
             vertices.append(np.array(vertex))
             bulges.append(bulge)
     return ArcPath(np.array(vertices), np.array(bulges)) if bulges else None

@@ -53,7 +53,8 @@ def sine_law(sheet: FormedSheet, _stated: Thinning) -> Series:
 
     References
     ----------
-    Wong, Dean & Lin, Int. J. Mach. Tools Manuf. 43 (2003) 1419-1435, for the sine law (seen in a public copy).
+    A printed table that was seen in a public copy; it refers to Wong, Dean & Lin, Int. J. Mach. Tools Manuf. 43 (2003)
+    1419-1435, which was not.
     """
     curve = sheet.on_mould
     (thickness,) = resolve(

@@ -7,7 +7,8 @@ Over one facet the signed distance d is a smooth function of two coordinates, an
   tangent plane there, ``d(p) ≥ d(q) + g·(p − q)``, which is exact at the minimum; where d is concave, likewise;
 - where d is a saddle both extremes are on the edges. These are divided, and between two points an edge strays from
   its chord by at most ``M e²/8``, M bounding the second derivative;
-- where the kind changes the facet is divided in four until each part is of one kind or ``M e²/6`` is negligible.
+- where the kind changes, what bends the wrong way is outweighed by a quadratic, which costs at most ``M e²/6``; the facet
+  is divided in four until that is negligible.
 """
 
 from __future__ import annotations
@@ -17,13 +18,19 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from profiles.surfaces import CONCAVE, CONVEX, MIXED, SADDLE, Contact, Surface
+from profiles.surfaces import Bends, Contact, Surface
 
 Array = NDArray[np.float64]
 Rows = NDArray[np.intp]
+Kinds = NDArray[np.int8]
+
+CONVEX, CONCAVE, SADDLE = 1, -1, 0
 
 EDGE_PARTS = 12
-DIVISIONS = 6
+DIVISIONS = 5
+NEGLIGIBLE = 2e-3
+"""Part of a facet's range by which a bound may exceed it before the facet is divided."""
+
 ROUNDS = 8
 
 
@@ -69,9 +76,10 @@ def facet_spans(surface: Surface, vertices: Array, triangles: Rows, *, divisions
     corners = vertices[triangles]
     beside = 0.5 * longest_sides(corners)
     feet = contact.where[triangles]
-    kinds = surface.kinds(least(feet) - beside, most(feet) + beside)
+    bends = surface.bends(least(feet) - beside, most(feet) + beside)
     values = contact.distance[triangles]
     low, high = least(values), most(values)
+    kinds, slack = _kinds(bends, corners, contact.gradient[triangles])
     for kind in (CONVEX, CONCAVE):
         here = np.flatnonzero(kinds == kind)
         if len(here):
@@ -80,10 +88,37 @@ def facet_spans(surface: Surface, vertices: Array, triangles: Rows, *, divisions
     here = np.flatnonzero(kinds == SADDLE)
     if len(here):
         low[here], high[here] = _saddle(surface, vertices, triangles[here], contact)
-    here = np.flatnonzero(kinds == MIXED)
-    if len(here):
-        low[here], high[here] = _mixed(surface, corners[here], _Corners.of(contact, triangles[here], 1), divisions)
+    low, high = low - slack, high + slack
+    here = np.flatnonzero(slack > NEGLIGIBLE * (high - low) + 1e-10)
+    if len(here) and divisions:
+        parts = facet_spans(surface, *_quarters(corners[here]), divisions=divisions - 1)
+        low[here] = np.maximum(low[here], least(parts.low.reshape(-1, 4)))
+        high[here] = np.minimum(high[here], most(parts.high.reshape(-1, 4)))
     return Spans(low, high)
+
+
+def _kinds(bends: Bends, corners: Array, gradients: Array) -> tuple[Kinds, Array]:
+    """Return which kind each facet is taken for, and by how much the distance may overstep what that kind allows.
+
+    A function becomes convex when a quadratic is added that outweighs what bends the other way, and a facet is then
+    out by at most a sixth of that quadratic along its sides.
+    """
+    against = (
+        np.maximum(-bends.along_least, 0.0), np.maximum(-bends.around_least, 0.0),
+        np.maximum(bends.along_most, 0.0), np.maximum(bends.around_most, 0.0),
+    )  # fmt: skip
+    kinds = np.full(len(corners), SADDLE, dtype=np.int8)
+    slack = np.zeros(len(corners))
+    one_way = ((against[0] == 0.0) & (against[3] == 0.0)) | ((against[2] == 0.0) & (against[1] == 0.0))
+    mixed = ~one_way
+    squares = _side_squares(corners, gradients)
+    out = [_weighed(squares, against[0], against[1]) / 6.0, _weighed(squares, against[2], against[3]) / 6.0]
+    kinds[out[0] == 0.0] = CONVEX
+    kinds[(out[0] > 0.0) & (out[1] == 0.0)] = CONCAVE
+    convex = out[0] <= out[1]
+    kinds[mixed & convex], kinds[mixed & ~convex] = CONVEX, CONCAVE
+    slack[mixed] = np.minimum(out[0], out[1])[mixed]
+    return kinds, slack
 
 
 def least(values: Array) -> Array:
@@ -190,21 +225,26 @@ def _clipped(values: Array) -> Array:
     return np.clip(np.nan_to_num(values, nan=0.5, posinf=1.0, neginf=0.0), 0.0, 1.0)
 
 
-def _bent(surface: Surface, points: tuple[Array, Array], normals: tuple[Array, Array]) -> Array:
-    """Return bounds of the distance's second derivative along sides between two points each, ``|sᵀ H s|``.
+def _side_squares(corners: Array, gradients: Array) -> tuple[Array, Array]:
+    """Return squares of the sides of facets (m, 3, 3), their parts along the meridian and whole, each of shape (m, 3).
 
     A side's part along the meridian changes steadily from one end to the other, so that it is largest at an end;
-    a fifth is added for what the surface turns in between.
+    a fifth is added to either for what the surface turns in between.
     """
-    bend, hoop = surface.strongest
-    side = points[1] - points[0]
-    square = np.einsum("kx,kx->k", side, side)
+    sides = np.roll(corners, -1, axis=1) - corners
+    square = np.einsum("mcx,mcx->mc", sides, sides)
     along = np.zeros_like(square)
-    for point, normal in zip(points, normals, strict=True):
-        radius = np.maximum(np.hypot(point[:, 0], point[:, 1]), 1e-300)
-        around = (point[:, 0] * side[:, 1] - point[:, 1] * side[:, 0]) / radius
-        along = np.maximum(along, square - around**2 - np.einsum("kx,kx->k", normal, side) ** 2)
-    return np.asarray(1.2 * (bend * along + hoop * square))
+    for turn in (0, -1):
+        points, normals = np.roll(corners, turn, axis=1), np.roll(gradients, turn, axis=1)
+        radius = np.maximum(np.hypot(points[..., 0], points[..., 1]), 1e-300)
+        around = (points[..., 0] * sides[..., 1] - points[..., 1] * sides[..., 0]) / radius
+        along = np.maximum(along, square - around**2 - np.einsum("mcx,mcx->mc", normals, sides) ** 2)
+    return 1.2 * along, 1.2 * square
+
+
+def _weighed(squares: tuple[Array, Array], along: Array, around: Array) -> Array:
+    """Return the largest of ``|sᵀ H s|`` for the sides of facets, H having bounds along the meridian and around."""
+    return most(squares[0] * along[:, None] + squares[1] * around[:, None])
 
 
 def _saddle(surface: Surface, vertices: Array, triangles: Rows, contact: Contact) -> tuple[Array, Array]:
@@ -217,27 +257,16 @@ def _saddle(surface: Surface, vertices: Array, triangles: Rows, contact: Contact
     points = vertices[one] + shares * (vertices[other] - vertices[one])
     values = surface.distances(points.reshape(-1, 3)).reshape(len(shares), -1)
     values = np.concatenate([values, contact.distance[one][None], contact.distance[other][None]])
-    bent = _bent(surface, (vertices[one], vertices[other]), (contact.gradient[one], contact.gradient[other]))
-    between = bent / (8.0 * EDGE_PARTS**2)
     edges = edge.reshape(-1, 3)
-    return least((values.min(axis=0) - between)[edges]), most((values.max(axis=0) + between)[edges])
-
-
-def _mixed(surface: Surface, corners: Array, start: _Corners, divisions: int) -> tuple[Array, Array]:
-    """Return the range of the distance over facets (m, 3, 3) on which its kind changes, by dividing them."""
-    bent = [
-        _bent(surface, (corners[:, k - 1], corners[:, k]), (start.gradients[:, k - 1], start.gradients[:, k]))
-        for k in range(3)
-    ]
-    between = np.max(bent, axis=0) / 6.0
-    low, high = least(start.values) - between, most(start.values) + between
-    more = np.flatnonzero(between > 1e-3 * (high - low - 2.0 * between) + 1e-10)
-    if not divisions or not len(more):
-        return low, high
-    spans = facet_spans(surface, *_quarters(corners[more]), divisions=divisions - 1)
-    low[more] = np.maximum(low[more], least(spans.low.reshape(-1, 4)))
-    high[more] = np.minimum(high[more], most(spans.high.reshape(-1, 4)))
-    return low, high
+    low, high = least(values.min(axis=0)[edges]), most(values.max(axis=0)[edges])
+    corners = vertices[triangles]
+    feet, beside = contact.where[triangles], 0.5 * longest_sides(corners)
+    bends = surface.bends(least(feet) - beside, most(feet) + beside)
+    along = np.maximum(-bends.along_least, bends.along_most)
+    around = np.maximum(-bends.around_least, bends.around_most)
+    squares = _side_squares(corners, contact.gradient[triangles])
+    between = _weighed(squares, along, around) / (8.0 * EDGE_PARTS**2)
+    return low - between, high + between
 
 
 def _quarters(corners: Array) -> tuple[Array, Rows]:

@@ -136,16 +136,30 @@ def mesh_deviation(solid: Solid, corners: Array, normals: Array, *, chord_error:
 def _measured(surfaces: tuple[Surface, ...], whole: Topology, corners: Array, chord_error: float) -> _Facets:
     contacts = [surface.touch(whole.vertices) for surface in surfaces]
     apart = np.stack([most(contact.apart[whole.triangles]) for contact in contacts])
-    owners = np.argmin(apart, axis=0)
+    normals = facet_normals(corners)
+    owners = _owners(contacts, whole.triangles, apart, normals, chord_error)
     count = len(owners)
     strayed, lean, facing = np.empty(count), np.empty((count, 3)), np.empty(count)
-    normals = facet_normals(corners)
     for number, (surface, contact) in enumerate(zip(surfaces, contacts, strict=True)):
         here = np.flatnonzero(owners == number)
         if len(here):
             strayed[here] = _distances(surface, whole, here, (apart[number, here], chord_error))
             lean[here], facing[here] = _leans(contact, whole.triangles[here], normals[here])
     return _Facets(owners, strayed, lean, facing)
+
+
+def _owners(contacts: list[Contact], triangles: Rows, apart: Array, normals: Array, chord_error: float) -> Rows:
+    """Return which stretch each facet belongs to: the one its corners lie on, and of several the one it faces with."""
+    owners = np.argmin(apart, axis=0)
+    near = apart <= apart.min(axis=0) + 2.0 * chord_error
+    several = np.flatnonzero(near.sum(axis=0) > 1)
+    if len(several):
+        facing = [
+            np.where(near[number, several], _leans(contact, triangles[several], normals[several])[1], -np.inf)
+            for number, contact in enumerate(contacts)
+        ]
+        owners[several] = np.argmax(facing, axis=0)
+    return owners
 
 
 def _distances(surface: Surface, whole: Topology, here: Rows, near: tuple[Array, float]) -> Array:
@@ -156,13 +170,20 @@ def _distances(surface: Surface, whole: Topology, here: Rows, near: tuple[Array,
     vertices = whole.vertices[used]
     # Far off, the bounds by the surface's bending no longer hold, but no distance grows faster than the way.
     found = np.where(apart > CORNER * chord_error, apart + longest_sides(vertices[triangles]), 0.0)
-    close = np.flatnonzero(apart <= 0.05 / max(*surface.strongest, 1e-300))
+    close = np.flatnonzero(apart <= _reach(surface))
     if len(close):
         spans = facet_spans(surface, vertices, triangles[close])
         found[close] = np.where(
             apart[close] > CORNER * chord_error, np.maximum(spans.largest, apart[close]), spans.largest
         )
     return found
+
+
+def _reach(surface: Surface) -> float:
+    """Return how far off a stretch its bends hold for the distance [mm]."""
+    bends = surface.bends(np.array([-np.inf]), np.array([np.inf]))
+    strongest = max(float(np.abs(bend).max()) for bend in vars(bends).values())
+    return 0.05 / max(strongest, 1e-300)
 
 
 def _leans(contact: Contact, triangles: Rows, normals: Array) -> tuple[Array, Array]:
@@ -213,7 +234,8 @@ def _coverage(solid: Solid, whole: Topology, owners: Rows, chord_error: float) -
     far = [np.hypot(*(plane - end).transpose(2, 0, 1)).max(axis=1, initial=0.0) for end in ends]
     allowed = CORNER * chord_error
     bored = float(ends[1, 0]) > 1e-9 * solid.size
-    at_end, at_start = far[0] <= allowed, (far[1] <= allowed) & bored
+    at_end = (far[0] <= allowed) & (far[0] <= far[1])
+    at_start = (far[1] <= allowed) & ~at_end & bored
     rounds = (float(turn[at_end].sum()), float(turn[at_start].sum()))
     wanted = (2.0 * np.pi, -2.0 * np.pi if bored else 0.0)
     stray = ~(at_end | at_start)

@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 
 from profiles.rings import LEAST_COUNT, alternating, forming_rings
 from profiles.stitching import Rings
-from profiles.surfaces import SADDLE, Surface, TurnedArc, TurnedCurve
+from profiles.surfaces import Surface, TurnedArc, TurnedCurve
 
 Array = NDArray[np.float64]
 Rows = NDArray[np.intp]
@@ -193,7 +193,8 @@ def _arc_shares(part: TurnedArc, count: int, spread: float, *, split: bool) -> A
     """Return where on an arc its rings lie after the first, as shares of its length."""
     radius = sqrt(2.0 * spread)
     side = min(_circle(part) / count, 1.9 * radius)
-    saddle = part.kinds(np.zeros(1), np.zeros(1))[0] == SADDLE
+    # A bend towards the axis' side and a circle around it bend against each other.
+    saddle = part.curvature * float(part.normals[0][0] + part.normals[1][0]) > 0.0
     # On a saddle the deviations to both sides add up: of the side, and of the strip's height.
     room = 4.0 * radius**2 - side**2 if saddle else (radius + sqrt(radius**2 - 0.25 * side**2)) ** 2
     bend = abs(part.curvature)

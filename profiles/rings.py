@@ -102,6 +102,10 @@ def forming_rings(surface: TurnedCurve, spread: float, *, start: int, end: int, 
         plans = [plan]
         if search.settled(*_levelled(task, counts, search.radius)):
             break
+    for _ in range(ROUNDS if search.best is None else 0):
+        counts = _denser(counts, 1.04)
+        if search.settled(*_levelled(task, counts, radius)) or search.best:
+            break
     return search.best or _one_band(task, radius)
 
 
@@ -122,7 +126,7 @@ class _Search:
     def __init__(self, radius: float) -> None:
         self.radius = radius
         self.best: RingRow | None = None
-        self._good, self._bad = 0.0, np.inf
+        self._good, self._bad, self._failures = 0.0, np.inf, 0
 
     def settled(self, row: RingRow, excess: float) -> bool:
         """Take rings and their spread, as a part of what is allowed; return whether better ones need no search."""
@@ -132,11 +136,14 @@ class _Search:
                 self.best = row
         else:
             self._bad = min(self._bad, self.radius)
-        change = min(max(0.9995 / sqrt(max(excess, 1e-9)), 0.5), 1.1)
+            self._failures += 1
+        # Counts are whole numbers: a step too small would give the same ones again.
+        goal = 0.9995 - 0.002 * self._failures
+        change = min(max(goal / sqrt(max(excess, 1e-9)), 0.5), 1.1)
         self.radius *= change
         if self._good and self._bad < np.inf and not self._good < self.radius < self._bad:
             self.radius = sqrt(self._good * self._bad)
-        return self.best is not None and ((excess <= 1.0 and change < 1.005) or self._bad < 1.004 * self._good)
+        return self.best is not None and ((excess <= 1.0 and change < 1.006) or self._bad < 1.006 * self._good)
 
 
 def _one_band(task: _Task, radius: float) -> RingRow:
@@ -194,11 +201,12 @@ def _first_rings(metric: Metric, radius: float, start: int) -> Plan:
     """Return the pole and its fan, or the ring at the bore."""
     if start:
         needed = max(ceil(float(metric.around(np.zeros(1))[0][0]) / (1.6 * radius)), LEAST_COUNT)
-        if start <= 1.2 * needed:
+        beyond = max(ceil(float(metric.around(np.full(1, radius))[0][0]) / (1.4 * radius)), LEAST_COUNT)
+        if start <= 1.2 * beyond:
             return [(0.0, max(start, needed))]
         # A bore may ask for more than the forming surface does: one strip gets rid of it.
-        height = metric.change_height(np.zeros(1), np.array([start]), np.array([needed]), radius)
-        return [(0.0, start), (min(float(height[0]), metric.span), needed)]
+        height = metric.change_height(np.zeros(1), np.array([start]), np.array([beyond]), radius)
+        return [(0.0, start), (min(float(height[0]), metric.span), beyond)]
     count = LEAST_COUNT
     wanted = metric.place(FIRST_RADIUS) * 1.03
     if 2.0 * radius * cos(pi / 24.0) > wanted:
@@ -237,7 +245,7 @@ def _thinned(task: _Task, counts: list[int], radius: float) -> list[int]:
     return best
 
 
-def _denser(counts: list[int], share: float = 1.1) -> list[int]:
+def _denser(counts: list[int], share: float) -> list[int]:
     return [ceil(count * share) if count > 1 else 1 for count in counts]
 
 

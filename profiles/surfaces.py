@@ -22,10 +22,7 @@ from profiles.series import Series
 from profiles.solids import Solid
 
 Array = NDArray[np.float64]
-Kinds = NDArray[np.int8]
-
-CONVEX, CONCAVE, SADDLE, MIXED = 1, -1, 0, 2
-"""Which way the signed distance bends on a stretch, the same everywhere or changing."""
+Rows = NDArray[np.intp]
 
 TABLE = 512
 ROUNDING = 1e-13
@@ -58,12 +55,26 @@ class Contact:
     apart: Array
 
 
+@dataclass(frozen=True, eq=False)
+class Bends:
+    """Ranges of the distance's second derivatives near a surface, each of shape (m,).
+
+    Parameters
+    ----------
+    along_least, along_most : ndarray
+        Along the meridian [1/mm].
+    around_least, around_most : ndarray
+        Around the axis [1/mm].
+    """
+
+    along_least: Array
+    along_most: Array
+    around_least: Array
+    around_most: Array
+
+
 class Surface(Protocol):
     """One stretch of a half section, turned about the axis."""
-
-    @property
-    def strongest(self) -> tuple[float, float]:
-        """Largest curvature along the meridian and largest around the axis [1/mm]."""
 
     def touch(self, points: Array) -> Contact:
         """Return what the surface is to points (k, 3) in space [mm]."""
@@ -71,8 +82,8 @@ class Surface(Protocol):
     def distances(self, points: Array) -> Array:
         """Return the signed distances of points (k, 3) in space [mm]."""
 
-    def kinds(self, first: Array, last: Array) -> Kinds:
-        """Return which way the distance bends between arc lengths [mm]: CONVEX, CONCAVE, SADDLE or MIXED."""
+    def bends(self, first: Array, last: Array) -> Bends:
+        """Return how the distance bends between arc lengths [mm]."""
 
 
 def stretches(solid: Solid) -> tuple[TurnedCurve, *tuple[TurnedArc, ...]]:
@@ -134,42 +145,34 @@ class TurnedCurve:
 
     @cached_property
     def _bends(self) -> tuple[Array, Array, Array]:
-        """Arc lengths, and signs of the second derivatives there: along the meridian and around the axis."""
+        """Arc lengths, and the second derivatives there: along the meridian and around the axis."""
         curve = self.curve
         where = np.union1d(self._table.edges, curve.curvature.extremes()[0])
-        along, around = -curve.curvature(where), -np.sin(curve.slope(where))
-        least = 1e-9 / (curve.end - curve.start)
-        return (
-            where,
-            np.sign(np.where(np.abs(along) < least, 0.0, along)),
-            np.sign(np.where(np.abs(around) < 1e-9, 0.0, around)),
-        )
-
-    @cached_property
-    def strongest(self) -> tuple[float, float]:
-        """Largest curvature along the meridian and largest around the axis [1/mm]."""
-        where, _, _ = self._bends
-        bend = np.abs(self.curve.curvature(where))
+        along, radius, sine = -curve.curvature(where), curve.radius(where), np.sin(curve.slope(where))
         # On the axis the two are the same.
-        radius = self.curve.radius(where)
         off = radius > 1e-6 * radius.max()
-        hoop = np.abs(np.sin(self.curve.slope(where[off]))) / radius[off]
-        return float(bend.max()), float(hoop.max())
+        around = np.where(off, -sine / np.where(off, radius, 1.0), along)
+        least = 1e-9 / (curve.end - curve.start)
+        along[np.abs(along) < least] = 0.0
+        around[np.abs(around) < least] = 0.0
+        return where, along, around
 
-    def kinds(self, first: Array, last: Array) -> Kinds:
-        """Return which way the distance bends between arc lengths [mm]: CONVEX, CONCAVE, SADDLE or MIXED."""
+    def bends(self, first: Array, last: Array) -> Bends:
+        """Return how the distance bends between arc lengths [mm]."""
         where, along, around = self._bends
-        whole = _kind(along.min(), along.max(), around.min(), around.max())
-        if whole != MIXED:
-            return np.full(len(first), whole, dtype=np.int8)
+        if min(along.min() * along.max(), around.min() * around.max()) >= 0.0:
+            ends = (along.min(), along.max(), around.min(), around.max())
+            return Bends(*(np.full(len(first), end) for end in ends))
         low = np.maximum(np.searchsorted(where, first, side="right") - 1, 0)
         high = np.minimum(np.searchsorted(where, last, side="left"), len(where) - 1)
-        found = np.full(len(first), MIXED, dtype=np.int8)
-        for kind, one, other in ((CONVEX, 1, 1), (CONCAVE, -1, -1), (SADDLE, 1, -1), (SADDLE, -1, 1)):
-            # How many places up to each have the wrong sign: none between first and last makes the kind.
-            wrong = np.concatenate([[0], np.cumsum((along * one < 0.0) | (around * other < 0.0))])
-            found[wrong[high + 1] == wrong[low]] = kind
-        return found
+        cells = np.column_stack([low, high + 1]).ravel()
+        return Bends(
+            *(
+                pick.reduceat(np.append(values, values[-1]), cells)[::2]
+                for values in (along, around)
+                for pick in (np.minimum, np.maximum)
+            )
+        )
 
     def touch(self, points: Array) -> Contact:
         """Return what the surface is to points (k, 3) in space [mm]."""
@@ -286,19 +289,21 @@ class TurnedArc:
         return self._frame[2]
 
     @cached_property
-    def strongest(self) -> tuple[float, float]:
-        """Largest curvature along the meridian and largest around the axis [1/mm]."""
-        radius = self.path.along(self.number, np.linspace(0.0, 1.0, 33))[:, 0].min()
-        across = max(abs(float(normal[0])) for normal in self.normals)
-        bend = abs(self.curvature)
-        return bend, (1.0 if bend else across) / max(float(radius), 1e-9) if across > 1e-9 else 0.0
+    def _around(self) -> tuple[float, float]:
+        """Range of the distance's second derivative around the axis [1/mm]."""
+        turn = float(self.path.turns[self.number])
+        shares = np.linspace(0.0, 1.0, 2 if turn == 0.0 else 65)
+        radius = np.maximum(self.path.along(self.number, shares)[:, 0], 0.0)
+        across = np.cos(np.arctan2(*self.normals[0][::-1]) + shares * turn)
+        across[np.abs(across) < 1e-9] = 0.0
+        hoop = across / np.maximum(radius, 1e-9)
+        return float(hoop.min()), float(hoop.max())
 
-    def kinds(self, first: Array, last: Array) -> Kinds:  # noqa: ARG002  a line or arc bends alike everywhere
-        """Return which way the distance bends: CONVEX, CONCAVE, SADDLE or MIXED."""
-        around = np.array([normal[0] if abs(normal[0]) > 1e-9 else 0.0 for normal in self.normals])
-        if self.curvature and abs(float(self.path.turns[self.number])) > np.pi:
-            return np.full(len(first), MIXED, dtype=np.int8)
-        return np.full(len(first), _kind(-self.curvature, -self.curvature, around.min(), around.max()), dtype=np.int8)
+    def bends(self, first: Array, last: Array) -> Bends:  # noqa: ARG002  a line or arc bends alike everywhere
+        """Return how the distance bends: alike everywhere."""
+        # Beyond its ends an arc runs on straight.
+        ends = (min(-self.curvature, 0.0), max(-self.curvature, 0.0), *self._around)
+        return Bends(*(np.full(len(first), end) for end in ends))
 
     def touch(self, points: Array) -> Contact:
         """Return what the surface is to points (k, 3) in space [mm]."""
@@ -347,14 +352,3 @@ class TurnedArc:
         bend = np.where(is_before | is_behind, 0.0, self.curvature)
         past = np.where(is_before, before, np.where(is_behind, behind, 0.0))
         return distance, (aside[0], aside[1]), bend, np.hypot(past, distance)
-
-
-def _kind(along_least: float, along_most: float, around_least: float, around_most: float) -> int:
-    """Return the kind of a stretch from the range of its second derivatives, or of their signs."""
-    if along_least >= 0.0 and around_least >= 0.0:
-        return CONVEX
-    if along_most <= 0.0 and around_most <= 0.0:
-        return CONCAVE
-    if (along_least >= 0.0 and around_most <= 0.0) or (along_most <= 0.0 and around_least >= 0.0):
-        return SADDLE
-    return MIXED
