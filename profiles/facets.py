@@ -7,8 +7,8 @@ Over one facet the signed distance d is a smooth function of two coordinates, an
   tangent plane there, ``d(p) ≥ d(q) + g·(p − q)``, which is exact at the minimum; where d is concave, likewise;
 - where d is a saddle both extremes are on the edges. These are divided, and between two points an edge strays from
   its chord by at most ``M e²/8``, M bounding the second derivative;
-- where the kind changes, what bends the wrong way is outweighed by a quadratic, which costs at most ``M e²/6``; the facet
-  is divided in four until that is negligible.
+- where the kind changes, what bends the wrong way is outweighed by a quadratic, which costs at most ``M e²/6``; the
+  facet is divided in four until that is negligible.
 """
 
 from __future__ import annotations

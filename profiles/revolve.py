@@ -135,7 +135,7 @@ def revolve(solid: Solid, *, chord_error: float, facets: Facets = "balanced") ->
         forming *= min(1.0, 0.998 / excess[0])
         # At the joint the edge takes over the forming surface's shift: what is too much there comes from both.
         ease = max(ease * min(1.0, 0.97 / max(excess[1], 0.5)), 0.6)
-        body = np.where(excess[1:] > 1.0, np.minimum(0.93, 0.98 / excess[1:]) * body, body)
+        body = np.where(excess[1:] > 1.0, np.minimum(0.93, 0.98 / np.maximum(excess[1:], 0.5)) * body, body)
     raise GeometryError(
         f"no mesh was found that keeps a chord error of {chord_error:g} mm on this half section; allowed: stretches "
         "that are long against the chord error; do: allow a larger chord error, or change the smallest radius or land"

@@ -3,7 +3,7 @@
 - Straight vacuum forming into a cone, geometric element analysis: ``t/t0 = (1 + cos β)/2 · (r/R)^(sec β − 1)``; UC
   Berkeley MAS 2.0, "Thermoforming: theoretical considerations" (the formula seen in a public copy). Exact for the cone,
   so the tolerance is 1e-9.
-- Shear spinning: the sine law with the half angle measured from the axis, as a printed table (seen in a public copy) has
+- Shear spinning: the sine law, half angle measured from the axis, as a printed table (seen in a public copy) has
   it to two digits; it refers to Wong, Dean & Lin, Int. J. Mach. Tools Manuf. 43 (2003) 1419-1435 (not seen).
 - Volume: what the sheet loses in thickness it gains in area, so the sheet that has gone into the cavity is still there;
   derived.
