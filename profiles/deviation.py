@@ -12,15 +12,13 @@ Where a path is so far off that its normals no longer sort the curve, the bound 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from itertools import pairwise
 
 import numpy as np
-from numpy.polynomial.chebyshev import Chebyshev
 from numpy.typing import NDArray
 
 from profiles.arcpath import ArcPath
 from profiles.meridian import Meridian
-from profiles.series import interpolate, real_roots
+from profiles.series import critical_places, transform
 
 Array = NDArray[np.float64]
 
@@ -88,10 +86,9 @@ def deviation(curve: Meridian, path: ArcPath) -> Deviation:
     if fans is None:
         return _lipschitz(curve, path)
     found = _Largest()
-    for number in range(len(path)):
-        edges = _edges(curve, fans.lower[number], fans.upper[number])
-        for start, end in pairwise(edges.tolist()):
-            _search_stretch(curve, path, number, start, end, found)
+    stretches = _stretches(curve, fans)
+    for degree in np.unique(stretches.degrees).tolist():
+        _search(curve, path, stretches, degree, found)
     _search_joints(curve, path, fans, found)
     return Deviation(
         found.normal,
@@ -110,17 +107,19 @@ class _Largest:
 
     def meet_normal(self, where: Array, values: Array) -> None:
         index = int(np.argmax(np.abs(values)))
-        if abs(values[index]) >= self.normal:
-            self.normal, self.normal_where = float(abs(values[index])), float(where[index])
+        largest = float(np.abs(values).flat[index])
+        if largest >= self.normal:
+            self.normal, self.normal_where = largest, float(where.flat[index])
 
     def meet_slope(self, where: Array, values: Array) -> None:
         index = int(np.argmax(np.abs(values)))
-        if abs(values[index]) >= self.slope:
-            self.slope, self.slope_where = float(abs(values[index])), float(where[index])
+        largest = float(np.abs(values).flat[index])
+        if largest >= self.slope:
+            self.slope, self.slope_where = largest, float(where.flat[index])
 
 
-def gaps(curve: Meridian, path: ArcPath, number: int, where: Array) -> Array:
-    """Return the signed distances and leans between points of a curve and one stretch of a path.
+def gaps(curve: Meridian, path: ArcPath, numbers: NDArray[np.int_], where: Array) -> Array:
+    """Return the signed distances and leans between points of a curve and stretches of a path.
 
     Parameters
     ----------
@@ -128,44 +127,61 @@ def gaps(curve: Meridian, path: ArcPath, number: int, where: Array) -> Array:
         The exact curve.
     path : ArcPath
         The path.
-    number : int
-        Which stretch of the path.
-    where : ndarray of shape (n,)
-        Arc lengths of the curve's points [mm].
+    numbers : ndarray of shape (k,)
+        Stretches of the path.
+    where : ndarray of shape (k, n)
+        Arc lengths of the curve's points beside each stretch [mm].
 
     Returns
     -------
-    ndarray of shape (2, n)
+    ndarray of shape (2, k, n)
         How far the curve lies to the left of the stretch [mm], and how much it is turned to the left of it [rad].
     """
-    tangent = path.tangents[0][number]
-    left = np.array([-tangent[1], tangent[0]])
-    bend = path.curvatures[number]
-    reach = curve.points(where) - path.vertices[number]
-    rise = reach @ left
-    square = (reach**2).sum(axis=1)
+    tangent = path.tangents[0][numbers]
+    left = np.stack([-tangent[:, 1], tangent[:, 0]], axis=-1)[:, None, :]
+    bend = path.curvatures[numbers][:, None]
+    reach = curve.points(where) - path.vertices[numbers][:, None, :]
+    rise = (reach * left).sum(axis=-1)
+    square = (reach**2).sum(axis=-1)
     root = np.sqrt(np.maximum(1.0 - 2.0 * bend * rise + bend**2 * square, 0.0))
     # Distance to the circle without dividing by its curvature, so that a line is no special case.
     distance = (2.0 * rise - bend * square) / (1.0 + root)
-    outward = (left - bend * reach) / np.maximum(root, 1e-300)[:, None]
-    lean = np.arcsin(np.clip((curve.tangents(where) * outward).sum(axis=1), -1.0, 1.0))
+    outward = (left - bend[..., None] * reach) / np.maximum(root, 1e-300)[..., None]
+    lean = np.arcsin(np.clip((curve.tangents(where) * outward).sum(axis=-1), -1.0, 1.0))
     return np.stack([distance, lean])
 
 
-def _search_stretch(curve: Meridian, path: ArcPath, number: int, start: float, end: float, found: _Largest) -> None:
-    if end - start <= 1e-12 * (curve.end - curve.start):
-        return
-    coefficients = interpolate(lambda where: gaps(curve, path, number, where), start, end, _degree(curve, start, end))
+@dataclass(frozen=True, eq=False)
+class _Stretches:
+    """Which stretch of the path answers for which interval of the curve, and the degree that resolves it there."""
+
+    numbers: NDArray[np.int_]
+    starts: Array
+    ends: Array
+    degrees: NDArray[np.int_]
+
+
+def _stretches(curve: Meridian, fans: _Fans) -> _Stretches:
+    """Return the intervals of all stretches, parted where the curve is not smooth; shorter ones need less degree."""
+    edges = [_edges(curve, low, high) for low, high in zip(fans.lower, fans.upper, strict=True)]
+    numbers = np.repeat(np.arange(len(edges)), [len(row) - 1 for row in edges])
+    starts, ends = np.concatenate([row[:-1] for row in edges]), np.concatenate([row[1:] for row in edges])
+    share = (ends - starts) / (curve.end - curve.start)
+    long = share > 1e-12
+    degrees = np.where(share < 0.15, 12, np.where(share < 0.4, 24, 48))
+    return _Stretches(numbers[long], starts[long], ends[long], degrees[long])
+
+
+def _search(curve: Meridian, path: ArcPath, stretches: _Stretches, degree: int, found: _Largest) -> None:
+    """Meet the extremes of distance and lean on the stretches that one degree resolves."""
+    chosen = stretches.degrees == degree
+    numbers, starts, ends = stretches.numbers[chosen], stretches.starts[chosen], stretches.ends[chosen]
+    nodes, matrix = transform(degree)
+    where = 0.5 * (starts + ends)[:, None] + 0.5 * (ends - starts)[:, None] * nodes
+    coefficients = gaps(curve, path, numbers, where) @ matrix
     for row, meet in ((0, found.meet_normal), (1, found.meet_slope)):
-        piece = Chebyshev(coefficients[row], domain=[start, end])
-        where = np.concatenate([[start, end], real_roots(piece.deriv())])
-        meet(where, gaps(curve, path, number, where)[row])
-
-
-def _degree(curve: Meridian, start: float, end: float) -> int:
-    """Degree that resolves the distance on an interval of the curve: shorter intervals need less."""
-    share = (end - start) / (curve.end - curve.start)
-    return 12 if share < 0.15 else 24 if share < 0.4 else 48
+        places = critical_places(coefficients[row], starts, ends)
+        meet(places, gaps(curve, path, numbers, places)[row])
 
 
 def _search_joints(curve: Meridian, path: ArcPath, fans: _Fans, found: _Largest) -> None:

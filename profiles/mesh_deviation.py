@@ -159,7 +159,7 @@ def _owners(contacts: list[Contact], triangles: Rows, apart: Array, normals: Arr
             for number, contact in enumerate(contacts)
         ]
         owners[several] = np.argmax(facing, axis=0)
-    return owners
+    return np.asarray(owners)
 
 
 def _distances(surface: Surface, whole: Topology, here: Rows, near: tuple[Array, float]) -> Array:

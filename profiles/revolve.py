@@ -117,9 +117,8 @@ def revolve(solid: Solid, *, chord_error: float, facets: Facets = "balanced") ->
         If single precision can't hold the chord error at that size, more than 4 000 000 triangles are needed, or the
         half section has stretches too small to be told apart in single precision.
     """
-    room = _room(solid, chord_error)
+    surfaces, room = _told_apart(solid, chord_error)
     _check_number(triangle_limit(solid.curve, chord_error=room, facets=facets), chord_error)
-    surfaces = _told_apart(solid)
     forming, ease, body = 1.0, EASE, np.ones(len(surfaces) - 1)
     for _ in range(ROUNDS):
         chain = chain_rings(
@@ -142,8 +141,8 @@ def revolve(solid: Solid, *, chord_error: float, facets: Facets = "balanced") ->
     )
 
 
-def _room(solid: Solid, chord_error: float) -> float:
-    """Return the deviation that is left for the facets once vertices are rounded to single precision [mm]."""
+def _told_apart(solid: Solid, chord_error: float) -> tuple[tuple[TurnedCurve, *tuple[TurnedArc, ...]], float]:
+    """Return the stretches that a mesh can show, and the deviation that is left for its facets [mm]."""
     step = float(np.spacing(np.float32(solid.size)))
     # Half a step in each of three coordinates, of which two share the radius.
     rounding = 0.75 * step
@@ -152,9 +151,13 @@ def _room(solid: Solid, chord_error: float) -> float:
             f"a chord error of {chord_error:g} mm cannot be kept on a solid of {solid.size:.6g} mm: an STL's numbers "
             f"are {step:.2g} mm apart there; allowed: {5.0 * rounding:.2g} mm or more; do: allow a larger chord error"
         )
-    # A coarse mesh is still to look like the solid.
-    outer = float(solid.rest.vertices[:, 0].max())
-    return MARGIN * min(chord_error, outer / 200.0) - rounding
+    forming, *body = stretches(solid)
+    lengths = np.array([part.path.lengths[part.number] for part in body])
+    shown = lengths > max(0.25 * chord_error, 4.0 * step)
+    # A coarse mesh is still to look like the solid, down to its narrowest stretch.
+    finest = min(float(solid.rest.vertices[:, 0].max()) / 200.0, float(lengths[shown].min()) / 3.0)
+    room = min(MARGIN * chord_error - float(lengths[~shown].sum()), finest) - rounding
+    return (forming, *(part for part, kept in zip(body, shown.tolist(), strict=True) if kept)), room
 
 
 def _check_number(number: float, chord_error: float) -> None:
@@ -163,14 +166,6 @@ def _check_number(number: float, chord_error: float) -> None:
             f"a chord error of {chord_error:g} mm needs about {number:.3g} triangles; allowed: {MOST_TRIANGLES}; "
             f"do: allow at least {chord_error * number / (0.9 * MOST_TRIANGLES):.2g} mm"
         )
-
-
-def _told_apart(solid: Solid) -> tuple[TurnedCurve, *tuple[TurnedArc, ...]]:
-    """Return the stretches of a solid without those that single precision can't tell from a point."""
-    forming, *body = stretches(solid)
-    least = 4.0 * float(np.spacing(np.float32(solid.size)))
-    kept = tuple(part for part in body if part.path.lengths[part.number] > least)
-    return (forming, *kept)
 
 
 def _displaced(chain: Chain, facets: Facets, room: float) -> tuple[Array, Array]:

@@ -140,15 +140,13 @@ def _is_plane(part: TurnedArc) -> bool:
 
 def _need(part: TurnedArc, spread: float) -> int:
     """Return the least count of a stretch's rings."""
-    if _is_plane(part):
-        return LEAST_COUNT
-    radius = max(float(end[0]) for end in part.ends)
+    radius, width = max(float(end[0]) for end in part.ends), abs(float(part.ends[1][0] - part.ends[0][0]))
+    across = 1.0 if part.curvature else abs(float(part.normals[0][0]))
+    # Chords may not reach far across a narrow stretch beside them.
+    beside = _chords(radius, max(0.98 * spread, 0.3 * width))
     if part.curvature:
-        # Chords may not reach far into the stretch beside a narrow edge.
-        width = abs(float(part.ends[1][0] - part.ends[0][0]))
-        chords = _chords(radius, max(0.98 * spread, 0.3 * width))
-        return max(LEAST_COUNT, chords, ceil(_circle(part) / (1.95 * sqrt(2.0 * spread))))
-    return max(LEAST_COUNT, _chords(radius, 0.98 * spread / abs(float(part.normals[0][0]))))
+        return max(LEAST_COUNT, beside, ceil(_circle(part) / (1.95 * sqrt(2.0 * spread))))
+    return max(LEAST_COUNT, beside, _chords(radius, 0.98 * spread / max(across, 1e-12)))
 
 
 def _chords(radius: float, sagitta: float) -> int:
@@ -173,7 +171,9 @@ def _joint_count(body: list[TurnedArc], needs: list[int], number: int, last: int
     # A bore's lower ring has as many vertices as its upper one, which is the forming surface's first.
     if number == len(body) - 2 and last > 1 and not _is_plane(body[-1]):
         return max(last, needs[number])
-    return max(needs[number] if not _is_plane(body[number]) else 0, needs[number + 1])
+    return max(
+        needs[number] if float(body[number].ends[1][0]) > 0.5 * float(body[number].ends[0][0]) else 0, needs[number + 1]
+    )
 
 
 def _stretch(part: TurnedArc, counts: tuple[int, int, int], spread: float, split: bool) -> _Stretch:  # noqa: FBT001

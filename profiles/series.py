@@ -157,6 +157,54 @@ def real_roots(piece: Chebyshev) -> Array:
     return np.asarray(np.clip(real[(real > start - 1e-9 * width) & (real < end + 1e-9 * width)], start, end))
 
 
+def critical_places(coefficients: Array, starts: Array, ends: Array) -> Array:
+    """Return where many polynomials may be largest or smallest on intervals of their own.
+
+    Parameters
+    ----------
+    coefficients : ndarray of shape (k, n)
+        Chebyshev coefficients of each polynomial on its interval, lowest first; n of 2 or more.
+    starts, ends : ndarray of shape (k,)
+        The intervals.
+
+    Returns
+    -------
+    ndarray of shape (k, n)
+        The two ends and the real roots of the derivative; where there are fewer, the start again.
+
+    Notes
+    -----
+    Roots are eigenvalues of colleague matrices (Good, Specht; from memory), taken for all polynomials of one degree at
+    once.
+    """
+    slopes = np.asarray(chebyshev.chebder(coefficients, axis=1), dtype=np.float64)
+    large = np.abs(slopes) > RESOLUTION * np.abs(slopes).max(axis=1, keepdims=True)
+    degrees = np.where(large.any(axis=1), slopes.shape[1] - 1 - np.argmax(large[:, ::-1], axis=1), 0)
+    places = np.full(coefficients.shape, -1.0)
+    places[:, -1] = 1.0
+    for degree in np.unique(degrees[degrees > 0]).tolist():
+        rows = degrees == degree
+        places[rows, 1 : degree + 1] = _roots_within(slopes[rows, : degree + 1])
+    middles, halves = 0.5 * (starts + ends), 0.5 * (ends - starts)
+    return np.asarray(middles[:, None] + halves[:, None] * places)
+
+
+def _roots_within(coefficients: Array) -> Array:
+    """Return the real roots in [−1, 1] of Chebyshev polynomials of one degree, −1 in place of each other root."""
+    degree = coefficients.shape[1] - 1
+    if degree == 1:
+        roots = (-coefficients[:, 0] / coefficients[:, 1])[:, None].astype(complex)
+    else:
+        scale = np.append(1.0, np.full(degree - 1, np.sqrt(0.5)))
+        beside = np.append(np.sqrt(0.5), np.full(degree - 2, 0.5))
+        matrices = np.tile(np.diag(beside, 1) + np.diag(beside, -1), (len(coefficients), 1, 1))
+        matrices[:, :, -1] -= 0.5 * coefficients[:, :-1] / coefficients[:, -1:] * (scale / scale[-1])
+        roots = np.linalg.eigvals(matrices[:, ::-1, ::-1])
+    # A double root comes out as a close complex pair: its real part is kept, for an extreme too many does no harm.
+    near = (np.abs(roots.imag) < 2e-6) & (np.abs(roots.real) < 1.0 + 2e-9)
+    return np.asarray(np.where(near, np.clip(roots.real, -1.0, 1.0), -1.0))
+
+
 def merged_breaks(*breaks: Array, start: float, end: float) -> Array:
     """Return the breaks of several functions on an interval as one row, those that rounding alone sets apart as one."""
     inner = np.unique(np.concatenate(breaks))
@@ -252,16 +300,29 @@ def interpolate(function: Callable[[Array], Array], start: float, end: float, de
     GeometryError
         If a value is not a finite number.
     """
-    nodes, transform = _transform(degree)
+    nodes, matrix = transform(degree)
     values = np.atleast_2d(function(0.5 * (start + end) + 0.5 * (end - start) * nodes))
     if not np.isfinite(values).all():
         raise GeometryError(f"the curve has no finite value everywhere between {start:.6g} and {end:.6g} mm along it")
-    return np.asarray(values @ transform)
+    return np.asarray(values @ matrix)
 
 
 @cache
-def _transform(degree: int) -> tuple[Array, Array]:
-    """Return Chebyshev points of the first kind and the matrix from values there to coefficients."""
+def transform(degree: int) -> tuple[Array, Array]:
+    """Return Chebyshev points and the way from values there to coefficients.
+
+    Parameters
+    ----------
+    degree : int
+        Degree of the polynomials.
+
+    Returns
+    -------
+    nodes : ndarray of shape (degree + 1,)
+        Chebyshev points of the first kind, from −1 to 1.
+    matrix : ndarray of shape (degree + 1, degree + 1)
+        ``values @ matrix`` are the coefficients, lowest first.
+    """
     nodes = chebyshev.chebpts1(degree + 1)
     basis = chebyshev.chebvander(nodes, degree)
     weights = np.full(degree + 1, 2.0 / (degree + 1))
