@@ -10,6 +10,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 import numpy as np
 
@@ -68,6 +69,8 @@ class _Given:
         return self.job.turning or self.setup.turning
 
 
+# A program is proved when it is planned and again when it is read back: the same text has the same proof.
+@lru_cache(maxsize=4)
 def prove_turning(text: str, job: Job, mould: Mould) -> TurningProof:
     """Read a turning program back and find every kind of fault in it.
 

@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from profiles.facets import facet_spans, least, longest_sides, most
 from profiles.mesh_topology import Finding, Topology, facet_normals, topology
 from profiles.solids import Solid
-from profiles.surfaces import Contact, Surface, stretches
+from profiles.surfaces import Contact, Surface, TurnedCurve, stretches
 
 Array = NDArray[np.float64]
 Rows = NDArray[np.intp]
@@ -133,11 +133,14 @@ def mesh_deviation(solid: Solid, corners: Array, normals: Array, *, chord_error:
     )
 
 
-def _measured(surfaces: tuple[Surface, ...], whole: Topology, corners: Array, chord_error: float) -> _Facets:
+def _measured(
+    surfaces: tuple[TurnedCurve, *tuple[Surface, ...]], whole: Topology, corners: Array, chord_error: float
+) -> _Facets:
+    limits = (surfaces[0].curve.start, surfaces[0].curve.end, chord_error)
     contacts = [surface.touch(whole.vertices) for surface in surfaces]
     apart = np.stack([most(contact.apart[whole.triangles]) for contact in contacts])
     normals = facet_normals(corners)
-    owners = _owners(contacts, whole.triangles, apart, normals, chord_error)
+    owners = _owners(contacts, whole.triangles, apart, normals, limits)
     count = len(owners)
     strayed, lean, facing = np.empty(count), np.empty((count, 3)), np.empty(count)
     for number, (surface, contact) in enumerate(zip(surfaces, contacts, strict=True)):
@@ -148,8 +151,15 @@ def _measured(surfaces: tuple[Surface, ...], whole: Topology, corners: Array, ch
     return _Facets(owners, strayed, lean, facing)
 
 
-def _owners(contacts: list[Contact], triangles: Rows, apart: Array, normals: Array, chord_error: float) -> Rows:
+def _owners(
+    contacts: list[Contact], triangles: Rows, apart: Array, normals: Array, limits: tuple[float, float, float]
+) -> Rows:
     """Return which stretch each facet belongs to: the one its corners lie on, and of several the one it faces with."""
+    feet = contacts[0].where[triangles]
+    first, last, chord_error = limits
+    # A facet of the edge or of a bore touches the forming surface with corners on its last or first ring alone.
+    beside = (least(feet) >= last - 0.5 * chord_error) | (most(feet) <= first + 0.5 * chord_error)
+    apart = np.vstack([np.where(beside, np.inf, apart[0]), apart[1:]])
     owners = np.argmin(apart, axis=0)
     near = apart <= apart.min(axis=0) + 2.0 * chord_error
     several = np.flatnonzero(near.sum(axis=0) > 1)
