@@ -6,9 +6,11 @@ import json
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Any
 
 from fabricate.drawing import lathe_drawing
 from fabricate.inspection import sag_columns, sag_table
+from fabricate.notices import notices
 from fabricate.order import DRAWING, JOB, PACKAGE_FILES, PROGRAM, PROOF, SOLID, TABLE, Order
 from fabricate.proof import Proof, prove_files
 from outputs.dxf import write_drawing
@@ -83,8 +85,15 @@ def make_package(order: Order, folder: Path, *, replace: bool = False) -> MadePa
         proof = prove_files(order, place)
         if not proof.passed:
             raise ProofFailedError(proof)
-        write_file(place / PROOF, json.dumps(proof.as_json(), indent=1, allow_nan=False) + "\n")
+        write_file(
+            place / PROOF, json.dumps(_stated(order, proof), indent=1, ensure_ascii=False, allow_nan=False) + "\n"
+        )
     return MadePackage(folder, proof)
+
+
+def _stated(order: Order, proof: Proof) -> dict[str, Any]:
+    """Return what ``proof.json`` says: the proof, and what the shop was told or asked when the package was made."""
+    return proof.as_json() | {"warnings": list(notices(order))}
 
 
 def _contents(order: Order) -> Mapping[str, Callable[[Path], None]]:

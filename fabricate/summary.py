@@ -2,15 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from dataclasses import asdict, dataclass
 from textwrap import wrap
 from typing import Any
 
 import numpy as np
 
-from fabricate.job import questions
 from fabricate.make import MadePackage
+from fabricate.notices import notices
 from fabricate.order import Order
 from fabricate.proof import Proof
 from fabricate.verdict import FileVerdict
@@ -112,36 +111,6 @@ def _springback_words(order: Order) -> str:
     )
 
 
-def warnings(order: Order) -> tuple[str, ...]:
-    """Return everything that the shop should be asked or told about a job.
-
-    Parameters
-    ----------
-    order : Order
-        The job and its exact geometry.
-
-    Returns
-    -------
-    tuple of str
-        One sentence each.
-    """
-    job = order.job
-    notes = order.turning_plan.notes if job.turning is not None else (NO_PROGRAM,)
-    return (*questions(job), *_wide_bore(order), *notes)
-
-
-NO_PROGRAM = "there is no [turning] table: no turning program is written"
-
-
-def _wide_bore(order: Order) -> Iterator[str]:
-    bore, hole = order.job.mould.bore_diameter, order.job.reflector.hole_diameter
-    if bore > hole:
-        yield (
-            f"mould.bore_diameter is {bore:g} {order.job.units} and reflector.hole_diameter {hole:g}: the reflecting "
-            "face has nothing under it there; is a bore that wide meant?"
-        )
-
-
 def summary_json(order: Order, made: MadePackage) -> dict[str, Any]:
     """Return the summary as plain values for ``make --json``.
 
@@ -162,7 +131,7 @@ def summary_json(order: Order, made: MadePackage) -> dict[str, Any]:
         "title": order.job.title,
         "units": order.job.units,
         "mould": asdict(mould_figures(order)),
-        "warnings": list(warnings(order)),
+        "warnings": list(notices(order)),
         "proof": made.proof.as_json(),
     }
 
@@ -246,4 +215,4 @@ def _labelled(label: str, text: str) -> list[str]:
 
 
 def _warning_lines(order: Order) -> list[str]:
-    return [line for text in warnings(order) for line in wrap(f"Note: {text}", WIDTH, subsequent_indent="  ")]
+    return [line for text in notices(order) for line in wrap(f"Note: {text}", WIDTH, subsequent_indent="  ")]

@@ -84,7 +84,11 @@ def chain_rings(
     """
     forming, *body = surfaces
     bored = float(forming.curve.radius(forming.curve.start)) > 1e-9 * float(forming.curve.radius(forming.curve.end))
-    needs = [_need(part, body_spread) for part in body]
+    # An arc's share goes into lower strips; a cylinder has nothing but its count.
+    needs = [
+        _need(part, body_spread * (1.0 if part.curvature else share))
+        for part, share in zip(body, shares.tolist(), strict=True)
+    ]
     tangent = _tangent(forming, body[0])
     row = forming_rings(
         forming,

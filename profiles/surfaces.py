@@ -25,6 +25,9 @@ Array = NDArray[np.float64]
 Rows = NDArray[np.intp]
 
 TABLE = 512
+BLOCK = 65536
+"""Points taken at a time, so that what is computed of them stays near the processor."""
+
 ROUNDING = 1e-13
 STEPS = 12
 
@@ -105,6 +108,11 @@ def stretches(solid: Solid) -> tuple[TurnedCurve, *tuple[TurnedArc, ...]]:
     return (TurnedCurve(solid.curve), *rest)
 
 
+def _joined(contacts: list[Contact]) -> Contact:
+    """Return contacts one after another as one."""
+    return Contact(*(np.concatenate(parts) for parts in zip(*(vars(one).values() for one in contacts), strict=True)))
+
+
 def _contact(
     points: Array, distance: Array, normal: tuple[Array, Array], bend: Array, foot: tuple[Array, Array]
 ) -> Contact:
@@ -176,6 +184,8 @@ class TurnedCurve:
 
     def touch(self, points: Array) -> Contact:
         """Return what the surface is to points (k, 3) in space [mm]."""
+        if len(points) > BLOCK:
+            return _joined([self.touch(points[first : first + BLOCK]) for first in range(0, len(points), BLOCK)])
         radius, height = np.hypot(points[:, 0], points[:, 1]), points[:, 2]
         table = self._table
         where = np.interp(radius, table.radii, table.edges)
