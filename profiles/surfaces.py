@@ -25,7 +25,7 @@ Array = NDArray[np.float64]
 Rows = NDArray[np.intp]
 
 TABLE = 512
-BLOCK = 65536
+BLOCK = 8192
 """Points taken at a time, so that what is computed of them stays near the processor."""
 
 ROUNDING = 1e-13

@@ -28,6 +28,7 @@ from profiles.errors import FormatError
 
 DEMO = Path(fabricate.__file__).parent / "demo"
 COMMITTED = DEMO / "terrace-heater.svg"
+NUMBER = re.compile(r"-?\d+(?:\.\d+)?")
 
 
 def demo_picture(folder: Path) -> tuple[Order, Picture]:
@@ -55,7 +56,11 @@ def texts(text: str) -> list[str]:
 
 
 def test_the_committed_picture_is_that_of_the_package(package: tuple[Order, Path, Picture]) -> None:
-    assert picture_text(package[2]).encode() == COMMITTED.read_bytes()
+    # Other releases of the libraries may end the search for the arcs a hair elsewhere: a tenth of a millimetre of paper.
+    drawn, committed = picture_text(package[2]), COMMITTED.read_text(encoding="utf-8")
+    assert NUMBER.sub("0", drawn) == NUMBER.sub("0", committed)
+    places = ([float(number) for number in NUMBER.findall(text)] for text in (drawn, committed))
+    assert next(places) == pytest.approx(next(places), abs=0.1)
 
 
 def test_it_states_the_figures_of_the_files(package: tuple[Order, Path, Picture]) -> None:
