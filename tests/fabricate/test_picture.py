@@ -56,7 +56,7 @@ def texts(text: str) -> list[str]:
 
 
 def test_the_committed_picture_is_that_of_the_package(package: tuple[Order, Path, Picture]) -> None:
-    # Other releases of the libraries may end the search for the arcs a hair elsewhere: a tenth of a millimetre of paper.
+    # Other releases of the libraries may end the search for the arcs a hair elsewhere: a tenth of a millimetre on paper
     drawn, committed = picture_text(package[2]), COMMITTED.read_text(encoding="utf-8")
     assert NUMBER.sub("0", drawn) == NUMBER.sub("0", committed)
     places = ([float(number) for number in NUMBER.findall(text)] for text in (drawn, committed))
