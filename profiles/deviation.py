@@ -79,8 +79,8 @@ def deviation(curve: Meridian, path: ArcPath) -> Deviation:
     >>> from profiles.series import constant
     >>> circle = Meridian.of_curvature(constant(0.01, 0.0, 50.0))
     >>> chord = ArcPath(circle.points(np.array([0.0, 50.0])), np.zeros(1))
-    >>> round(deviation(circle, chord).normal, 9), round(100 * (1 - np.cos(0.25)), 9)
-    (np.float64(3.108757829), np.float64(3.108757829))
+    >>> round(deviation(circle, chord).normal, 9), round(100 * (1 - float(np.cos(0.25))), 9)
+    (3.108757829, 3.108757829)
     """
     fans = _fans(curve, path)
     if fans is None:
