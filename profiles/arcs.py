@@ -115,7 +115,7 @@ def fewest_arcs(curve: Meridian, *, distance: float, slope: float = 0.0) -> ArcF
     >>> from profiles.face import Face
     >>> fit = fewest_arcs(Meridian.of_face(Face(110.0), 208.0), distance=0.005)
     >>> round(fit.limit, 1), len(fit.path), fit.deviation.normal < 0.005
-    (5.9, 6, True)
+    (5.5, 6, True)
     """
     limit = arc_limit(curve, distance)
     count = max(1, int(np.ceil(limit - 0.45)))
