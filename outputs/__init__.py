@@ -1,6 +1,7 @@
 """Formats: each module writes one and reads it back."""
 
 __all__ = [
+    "choice",
     "dxf",
     "dxf_drawing",
     "dxf_pieces",

@@ -27,6 +27,7 @@ from typing import Any, Literal
 
 import numpy as np
 
+from outputs.choice import check_one_of
 from outputs.dxf_drawing import (
     BROKEN_WORD,
     CHECK_LENGTH,
@@ -38,7 +39,6 @@ from outputs.dxf_drawing import (
     UNITS_TEXT,
     Drawing,
     Units,
-    check_choice,
     dxf_library,
 )
 from outputs.dxf_pieces import ANGLE_DECIMALS, ARC_DECIMALS, BULGE_DECIMALS, COORDINATE_DECIMALS, Line, pieces_of
@@ -84,8 +84,8 @@ def write_drawing(drawing: Drawing, path: Path, *, version: Version = "R2010", e
     WriteError
         If the file cannot be written.
     """
-    check_choice("version", version, ("R2010", "R12"))
-    check_choice("entities", entities, ("polyline", "line-arc"))
+    check_one_of("drawing.version", version, ("R2010", "R12"))
+    check_one_of("drawing.entities", entities, ("polyline", "line-arc"))
     for name in drawing.layers:
         _check_layer(name)
     layers = {name: tuple(_as_written(name, path) for path in paths) for name, paths in drawing.layers.items()}

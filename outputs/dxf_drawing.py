@@ -10,8 +10,8 @@ from dataclasses import dataclass
 from types import MappingProxyType
 from typing import Any, Literal
 
+from outputs.choice import check_one_of
 from profiles.arcpath import ArcPath
-from profiles.errors import FormatError
 
 Units = Literal["mm", "inch"]
 
@@ -52,7 +52,7 @@ class Drawing:
     notes: tuple[str, ...] = ()
 
     def __post_init__(self) -> None:
-        check_choice("units", self.units, tuple(INSERT_UNITS))
+        check_one_of("drawing.units", self.units, tuple(INSERT_UNITS))
         layers = {name: tuple(paths) for name, paths in self.layers.items()}
         object.__setattr__(self, "layers", MappingProxyType(layers))
         object.__setattr__(self, "notes", tuple(self.notes))
@@ -74,24 +74,3 @@ def dxf_library() -> Any:
     if not logger.handlers:
         logger.addHandler(logging.NullHandler())
     return ezdxf
-
-
-def check_choice(key: str, value: object, allowed: tuple[str, ...]) -> None:
-    """Refuse a value that is not one of those allowed.
-
-    Parameters
-    ----------
-    key : str
-        Name of the value, for the message.
-    value : object
-        What was stated.
-    allowed : tuple of str
-        What may be stated.
-
-    Raises
-    ------
-    FormatError
-        If the value is none of them.
-    """
-    if value not in allowed:
-        raise FormatError(f"drawing.{key}: value is {value!r}; allowed: {', '.join(allowed)}; do: state one of them")

@@ -32,7 +32,8 @@ from typing import Literal, get_args
 
 import numpy as np
 
-from outputs.gcode_words import Dialect, check_one_of
+from outputs.choice import check_one_of
+from outputs.gcode_words import Dialect
 from profiles.arcpath import ArcPath
 from profiles.errors import FormatError
 

@@ -18,6 +18,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from typing import Literal, get_args
 
+from outputs.choice import check_one_of
 from profiles.errors import FormatError
 
 Units = Literal["mm", "inch"]
@@ -286,24 +287,3 @@ def _refusal(code: str, dialect: Dialect) -> str:
 
 def _listed(values: tuple[object, ...]) -> str:
     return ", ".join(repr(value) for value in values)
-
-
-def check_one_of(key: str, value: object, allowed: tuple[object, ...]) -> None:
-    """Refuse a value that is not one of those allowed.
-
-    Parameters
-    ----------
-    key : str
-        Name of the value, for the message.
-    value : object
-        What was stated.
-    allowed : tuple
-        What may be stated.
-
-    Raises
-    ------
-    FormatError
-        If the value is none of them.
-    """
-    if value not in allowed:
-        raise FormatError(f"{key} = {value!r} is not allowed: state one of {_listed(allowed)}")

@@ -322,7 +322,7 @@ class TestRefusedToWrite:
             written(tmp_path, Drawing("mm", {name: (CURVE,)}))
 
     def test_units_are_one_of_two(self) -> None:
-        with pytest.raises(FormatError, match=r"drawing\.units: value is 'cm'; allowed: mm, inch; do: state one"):
+        with pytest.raises(FormatError, match=r"drawing\.units: value is 'cm'; allowed: 'mm', 'inch'; do: state one"):
             Drawing("cm", {})  # type: ignore[arg-type]
 
     @pytest.mark.parametrize(("key", "value"), [("version", "R14"), ("entities", "spline")])

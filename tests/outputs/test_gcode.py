@@ -287,8 +287,8 @@ DIALECT_REFUSALS = [
     ({"decimals": True}, r"decimals = True is not allowed"),
     ({"decimals": 4.0}, r"decimals = 4.0 is not allowed"),
     ({"units": "inch", "units_word": "G20", "decimals": 3}, r"decimals = 3 is not allowed.*from 4 to 6"),
-    ({"plane_word": "G17"}, r"plane_word = 'G17' is not allowed: state one of 'G18', 'none'"),
-    ({"arcs": "bulge"}, r"arcs = 'bulge' is not allowed: state one of 'centre', 'radius', 'lines'"),
+    ({"plane_word": "G17"}, r"plane_word: value is 'G17'; allowed: 'G18', 'none'; do: state one"),
+    ({"arcs": "bulge"}, r"arcs: value is 'bulge'; allowed: 'centre', 'radius', 'lines'; do: state one"),
 ]
 
 
@@ -319,7 +319,7 @@ WRITER_REFUSALS = [
     ({}, lambda: [SpindleSpeed(0.0)], r"spindle speed of 0.0 rev/min is not allowed"),
     ({}, lambda: [SpindleLimit(math.inf)], r"spindle limit of inf rev/min is not allowed"),
     ({}, lambda: [SurfaceSpeed(0.5, 600.0)], r"surface speed of 0.5 m/min or ft/min is not allowed"),
-    ({}, lambda: [SpindleStart("M5")], r"spindle direction = 'M5' is not allowed: state one of 'M3', 'M4'"),  # type: ignore[arg-type]
+    ({}, lambda: [SpindleStart("M5")], r"spindle direction: value is 'M5'; allowed: 'M3', 'M4'; do: state one"),  # type: ignore[arg-type]
 ]
 
 
