@@ -1,6 +1,7 @@
 """The shop: jobs, materials, forming laws, moulds, turning, proofs and the command."""
 
 __all__ = [
+    "bending",
     "chain",
     "command",
     "contour",

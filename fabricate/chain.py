@@ -14,9 +14,10 @@ from functools import cached_property
 
 import numpy as np
 
+from fabricate.bending import BendingSheet
 from fabricate.job_keys import Job
 from fabricate.mould import Kind, Mould, mould_around
-from fabricate.springback import CurvatureMap, ReleasedFace, springback_map
+from fabricate.springback import CurvatureMap, ReleasedFace, StatedSpringback, springback_map
 from fabricate.thinning import FormedSheet, thickness_on_mould
 from profiles.errors import GeometryError, JobError
 from profiles.face import Face
@@ -58,7 +59,13 @@ class Chain:
     @cached_property
     def springback(self) -> CurvatureMap:
         """What the reflecting face's curvature does on release."""
-        return springback_map(self.released, self.job.forming.springback)
+        return springback_map(StatedSpringback(self.released, self.job.forming.springback, self._bending_sheet))
+
+    @property
+    def _bending_sheet(self) -> BendingSheet:
+        row = self.job.sheet.row
+        mirror_side = 1 if self.job.reflector.reflecting_face == "concave" else -1
+        return BendingSheet(self.job.sheet.thickness, row.youngs_modulus_mpa, row.poisson, mirror_side)
 
     @cached_property
     def on_mould(self) -> Meridian:

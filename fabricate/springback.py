@@ -1,8 +1,7 @@
 """Laws of springback: what the reflecting face does when the sheet lets go of the mould.
 
-Every law maps the meridional curvature of the released face to that of the face as it lies on the mould, at equal arc
-length: ``κ_mould(s) = gain(s) κ_part(s) + shift(s)``. The map has an inverse as long as the gain is not zero, so the
-way back from mould to part needs no law of its own. A meridian is assumed to keep its length on release.
+Every law ties the meridional curvature of the face as it lies on the mould to that of the released face, at equal arc
+length, both ways: a :class:`CurvatureMap`. A meridian is assumed to keep its length on release.
 
 A new law is one function here and one row in :data:`LAWS`.
 """
@@ -15,11 +14,12 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from fabricate.bending import BendingSheet, bent_after, bent_before, elastic_curvature
 from fabricate.job_keys import Springback
 from profiles.errors import GeometryError, JobError
 from profiles.face import Face
 from profiles.meridian import Meridian
-from profiles.series import Series, constant, merged_breaks, resolve
+from profiles.series import Series, merged_breaks, resolve
 
 Array = NDArray[np.float64]
 
@@ -45,32 +45,60 @@ class ReleasedFace:
     rim: float
 
 
+Bends = Callable[[Array, Array], Array]
+"""Curvatures [1/mm] at arc lengths [mm] from the curvatures [1/mm] on the other side of a release."""
+
+
 @dataclass(frozen=True, eq=False)
 class CurvatureMap:
-    """``κ_mould = gain κ_part + shift`` over the arc length.
+    """The meridional curvature on the mould and of the released part, each from the other.
 
     Parameters
     ----------
-    gain : Series
-        Factor [-].
-    shift : Series
-        What is added [1/mm].
+    loaded : callable
+        Curvature on the mould from arc length and curvature of the released face [1/mm].
+    released : callable
+        Its inverse.
+    breaks : ndarray
+        Arc lengths between which both are smooth [mm]; empty where they are so everywhere.
     """
 
-    gain: Series
-    shift: Series
+    loaded: Bends
+    released: Bends
+    breaks: Array
+
+    @classmethod
+    def of(cls, *, gain: float = 1.0, shift: Series | None = None) -> CurvatureMap:
+        """Return the map ``κ_mould = gain κ_part + shift``.
+
+        Parameters
+        ----------
+        gain : float
+            Factor [-].
+        shift : Series or None
+            What is added over the arc length [1/mm]; None for nothing.
+        """
+
+        def added(where: Array) -> Array | float:
+            return 0.0 if shift is None else shift(where)
+
+        return cls(
+            lambda where, bend: np.asarray(gain * bend + added(where)),
+            lambda where, bend: np.asarray((bend - added(where)) / gain),
+            np.empty(0) if shift is None else shift.breaks,
+        )
 
     def load(self, part: Meridian) -> Meridian:
         """Return the face as it lies on the mould, from the released face [mm]."""
-        return self._mapped(part, lambda where, bend: self.gain(where) * bend + self.shift(where))
+        return self._mapped(part, self.loaded)
 
     def release(self, on_mould: Meridian) -> Meridian:
         """Return the released face, from the face as it lies on the mould [mm]."""
-        return self._mapped(on_mould, lambda where, bend: (bend - self.shift(where)) / self.gain(where))
+        return self._mapped(on_mould, self.released)
 
-    def _mapped(self, meridian: Meridian, change: Callable[[Array, Array], Array]) -> Meridian:
+    def _mapped(self, meridian: Meridian, change: Bends) -> Meridian:
         start, end = meridian.start, meridian.end
-        breaks = merged_breaks(meridian.breaks, self.gain.breaks, self.shift.breaks, start=start, end=end)
+        breaks = merged_breaks(meridian.breaks, self.breaks, start=start, end=end)
         # Sizes of curvatures are measured against a turn of one radian over the whole length.
         (bend,) = resolve(
             lambda where: change(where, meridian.curvature(where))[None], breaks, sizes=[10.0 / (end - start)]
@@ -81,15 +109,34 @@ class CurvatureMap:
         ).raised(float(meridian.height(first)))
 
 
-Law = Callable[[ReleasedFace, Springback, float], CurvatureMap]
+@dataclass(frozen=True, eq=False)
+class StatedSpringback:
+    """What a law is made from.
+
+    Parameters
+    ----------
+    part : ReleasedFace
+        The released reflecting face [mm].
+    table : Springback
+        The table of the job, in millimetres.
+    sheet : BendingSheet
+        The sheet.
+    """
+
+    part: ReleasedFace
+    table: Springback
+    sheet: BendingSheet
 
 
-def no_springback(part: ReleasedFace, _stated: Springback, _percent: float) -> CurvatureMap:
+Law = Callable[[StatedSpringback, float], CurvatureMap]
+
+
+def no_springback(_stated: StatedSpringback, _percent: float) -> CurvatureMap:
     """Return the map that changes nothing: the part keeps the mould's shape."""
-    return CurvatureMap(constant(1.0, 0.0, part.meridian.end), constant(0.0, 0.0, part.meridian.end))
+    return CurvatureMap.of()
 
 
-def focal_length_law(part: ReleasedFace, _stated: Springback, percent: float) -> CurvatureMap:
+def focal_length_law(stated: StatedSpringback, percent: float) -> CurvatureMap:
     """Return the map under which R0 on the mould is ``(1 − p/100)`` times the part's, all else being equal.
 
     Raises
@@ -97,53 +144,96 @@ def focal_length_law(part: ReleasedFace, _stated: Springback, percent: float) ->
     GeometryError
         If the face with that vertex radius ends before the trim.
     """
-    face = part.face
-    tighter = Face((1.0 - 0.01 * percent) * face.focal_length, face.conic_constant, face.asphere)
+    part = stated.part
+    tighter = Face((1.0 - 0.01 * percent) * part.face.focal_length, part.face.conic_constant, part.face.asphere)
     on_mould = Meridian.of_face(tighter, part.meridian.end)
-    start, end = 0.0, part.meridian.end
-    breaks = merged_breaks(part.meridian.breaks, on_mould.breaks, start=start, end=end)
-    (shift,) = resolve(
-        lambda where: (on_mould.curvature(where) - part.meridian.curvature(where))[None],
-        breaks,
-        sizes=[10.0 / end],
-    )
-    return CurvatureMap(constant(1.0, start, end), shift)
-
-
-def curvature_law(part: ReleasedFace, _stated: Springback, percent: float) -> CurvatureMap:
-    """Return the map of ``κ_part = κ_mould (1 − p/100)``."""
     end = part.meridian.end
-    return CurvatureMap(constant(1.0 / (1.0 - 0.01 * percent), 0.0, end), constant(0.0, 0.0, end))
+    breaks = merged_breaks(part.meridian.breaks, on_mould.breaks, start=0.0, end=end)
+    (shift,) = resolve(
+        lambda where: (on_mould.curvature(where) - part.meridian.curvature(where))[None], breaks, sizes=[10.0 / end]
+    )
+    return CurvatureMap.of(shift=shift)
 
 
-def stations_law(part: ReleasedFace, stated: Springback, _percent: float) -> CurvatureMap:
+def curvature_law(_stated: StatedSpringback, percent: float) -> CurvatureMap:
+    """Return the map of ``κ_part = κ_mould (1 − p/100)``."""
+    return CurvatureMap.of(gain=1.0 / (1.0 - 0.01 * percent))
+
+
+def stations_law(stated: StatedSpringback, _percent: float) -> CurvatureMap:
     """Return the map of ``κ_mould(s) = κ_part(s) + p(r)/100 · 1/(2f)``, PCHIP between rows, constant beyond."""
-    rows = np.array(stated.stations)
+    rows = np.array(stated.table.stations)
     percent = table_over_radius(rows[:, 0], rows[:, 1])
-    meridian, end = part.meridian, part.meridian.end
-    unit = 0.01 / part.face.vertex_radius
+    meridian, end = stated.part.meridian, stated.part.meridian.end
+    unit = 0.01 / stated.part.face.vertex_radius
     breaks = merged_breaks(meridian.breaks, arc_lengths_at(meridian, rows[:, 0]), start=0.0, end=end)
     (shift,) = resolve(lambda where: unit * percent(meridian.radius(where))[None], breaks, sizes=[10.0 / end])
-    return CurvatureMap(constant(1.0, 0.0, end), shift)
+    return CurvatureMap.of(shift=shift)
+
+
+def bending_law(stated: StatedSpringback, _percent: float) -> CurvatureMap:
+    """Return the map of elastic–plastic bending, ``κ_part = κ_mould (1 − 3x + 4x³)`` on the mid-surface.
+
+    ``x = Y'/(E' t κ_mould)``, in plane strain ``E' = E/(1 − ν²)`` and ``Y' = 2Y/√3``, Y the flow stress after forming.
+
+    Raises
+    ------
+    JobError
+        If the face has no curvature somewhere, or more than 40 % are predicted and the job does not accept it.
+
+    Notes
+    -----
+    An estimate and no bound: it leaves out the stretch that forming adds, which takes springback away.
+
+    References
+    ----------
+    The cubic: MIT 2.008, Homework 5 "Springback", eq. (1) (seen in a public copy). E': Marciniak, Duncan & Hu,
+    *Mechanics of Sheet Metal Forming*, 2nd ed., eq. 6.10 (seen in a public copy); the factor of Y' from memory.
+    """
+    sheet, part = stated.sheet, stated.part.meridian
+    limit = elastic_curvature(sheet, stated.table.flow_stress_mpa or 0.0)
+    least, at_least = part.curvature.smallest()[::-1]
+    if least <= 0.0:
+        raise JobError(
+            f'forming.springback.law: value is "bending", and the face has no curvature at radius '
+            f"{float(part.radius(at_least)):.6g} mm; allowed: a face curved everywhere; do: state another law"
+        )
+    half = 0.5 * sheet.mirror_side * sheet.thickness
+
+    def loaded(_where: Array, bend: Array) -> Array:
+        middle = bent_before(bend / (1.0 + half * bend), limit)
+        return np.asarray(middle / (1.0 - half * middle))
+
+    def released(_where: Array, bend: Array) -> Array:
+        middle = bent_after(bend / (1.0 + half * bend), limit)
+        return np.asarray(middle / (1.0 - half * middle))
+
+    share = 100.0 * float(1.0 - least / loaded(part.curvature.breaks, np.array([least]))[0])
+    if share > MOST_PERCENT and not stated.table.accept_estimate:
+        raise JobError(
+            f'forming.springback.law: value is "bending", which predicts {share:.3g} % at radius '
+            f"{float(part.radius(at_least)):.6g} mm; allowed: up to {MOST_PERCENT:g} %, as it leaves out the stretch "
+            "of forming; do: state the springback that the shop has seen, or accept_estimate = true"
+        )
+    return CurvatureMap(loaded, released, np.empty(0))
 
 
 LAWS: Mapping[str, Law] = {
     "none": no_springback,
     "focal-length": focal_length_law,
     "curvature": curvature_law,
+    "bending": bending_law,
     "stations": stations_law,
 }
 
 
-def springback_map(part: ReleasedFace, stated: Springback) -> CurvatureMap:
+def springback_map(stated: StatedSpringback) -> CurvatureMap:
     """Return the map that the job states.
 
     Parameters
     ----------
-    part : ReleasedFace
-        The released reflecting face [mm].
-    stated : Springback
-        The table of the job, in millimetres.
+    stated : StatedSpringback
+        Released face, table and sheet.
 
     Returns
     -------
@@ -155,27 +245,29 @@ def springback_map(part: ReleasedFace, stated: Springback) -> CurvatureMap:
     JobError
         If the law is not built in, or no percentage in range gives what is stated.
     """
-    if stated.law not in LAWS:
+    law = stated.table.law
+    if law not in LAWS:
         raise JobError(
-            f'forming.springback.law: value is "{stated.law}"; allowed: {", ".join(LAWS)}; do: state the springback in '
+            f'forming.springback.law: value is "{law}"; allowed: {", ".join(LAWS)}; do: state the springback in '
             "one of these"
         )
-    return LAWS[stated.law](part, stated, percent_of(part, stated))
+    return LAWS[law](stated, percent_of(stated))
 
 
-def percent_of(part: ReleasedFace, stated: Springback) -> float:
+def percent_of(stated: StatedSpringback) -> float:
     """Return the percentage of the stated law, solved for where the depth or slope lost is given [%]."""
-    if stated.depth_loss is not None:
-        wanted, lost, key = stated.depth_loss, depth_loss, "depth_loss"
-    elif stated.rim_slope_loss_deg is not None:
-        wanted, lost, key = np.radians(stated.rim_slope_loss_deg), rim_slope_loss, "rim_slope_loss_deg"
+    table, part = stated.table, stated.part
+    if table.depth_loss is not None:
+        wanted, lost, key = table.depth_loss, depth_loss, "depth_loss"
+    elif table.rim_slope_loss_deg is not None:
+        wanted, lost, key = np.radians(table.rim_slope_loss_deg), rim_slope_loss, "rim_slope_loss_deg"
     else:
-        return 0.0 if stated.percent is None else stated.percent
+        return 0.0 if table.percent is None else table.percent
 
     def excess(percent: float) -> float:
-        return lost(part, LAWS[stated.law](part, stated, percent)) - wanted
+        return lost(part, LAWS[table.law](stated, percent)) - wanted
 
-    return _solved(excess, f"forming.springback.{key}", getattr(stated, key))
+    return _solved(excess, f"forming.springback.{key}", getattr(table, key))
 
 
 def _solved(excess: Callable[[float], float], key: str, value: float) -> float:

@@ -57,6 +57,7 @@ def _round_trip_error(chain: Chain) -> float:
 
 
 SPRINGBACKS = [
+    'law = "bending"\nflow_stress_mpa = 9.0',
     'law = "none"',
     'law = "focal-length"\npercent = 4.0',
     'law = "focal-length"\ndepth_loss = 2.0',
@@ -76,7 +77,7 @@ def test_part_to_mould_and_back(springback: str, thinning: str, faces: tuple[str
 
 
 @pytest.mark.parametrize("ratio", [0.2, 0.25, 0.3, 0.4, 0.6, 1.0, 1.5])
-@pytest.mark.parametrize("springback", SPRINGBACKS[1:])
+@pytest.mark.parametrize("springback", [law for law in SPRINGBACKS if "bending" not in law][1:])
 def test_part_to_mould_and_back_over_f_over_d(springback: str, ratio: float) -> None:
     job = _job(
         springback=springback,
@@ -162,4 +163,4 @@ def test_a_mould_that_locks_the_part_is_refused_with_the_radius() -> None:
 
 
 def test_every_law_of_the_first_table_is_there() -> None:
-    assert {"none", "focal-length", "curvature", "stations"} <= set(SPRINGBACK_LAWS)
+    assert {"none", "focal-length", "curvature", "bending", "stations"} == set(SPRINGBACK_LAWS)

@@ -4,9 +4,17 @@ import numpy as np
 import pytest
 from numpy.testing import assert_allclose
 
+from fabricate.bending import BendingSheet
 from fabricate.chain import rim_arc_length
 from fabricate.job_keys import Springback
-from fabricate.springback import ReleasedFace, depth_loss, percent_of, rim_slope_loss, springback_map
+from fabricate.springback import (
+    ReleasedFace,
+    StatedSpringback,
+    depth_loss,
+    percent_of,
+    rim_slope_loss,
+    springback_map,
+)
 from profiles.errors import JobError
 from profiles.face import Face
 from profiles.meridian import Meridian
@@ -18,8 +26,15 @@ def _part(conic_constant: float = -1.0, asphere: tuple[float, ...] = ()) -> Rele
     return ReleasedFace(face, Meridian.of_face(face, rim + 8.0), rim)
 
 
+SHEET = BendingSheet(1.0, 69000.0, 0.33, 1)
+
+
+def _stated(part: ReleasedFace, **table: object) -> StatedSpringback:
+    return StatedSpringback(part, Springback.model_validate(table), SHEET)
+
+
 def _on_mould(part: ReleasedFace, **stated: object) -> Meridian:
-    return springback_map(part, Springback.model_validate(stated)).load(part.meridian)
+    return springback_map(_stated(part, **stated)).load(part.meridian)
 
 
 @pytest.mark.parametrize(("conic_constant", "asphere"), [(-1.0, ()), (-0.6, ()), (-1.0, (2e-10,))])
@@ -58,12 +73,11 @@ def test_none_keeps_the_shape() -> None:
 @pytest.mark.parametrize("law", ["focal-length", "curvature"])
 def test_the_shops_terms_are_solved_for(law: str) -> None:
     part = _part()
-    known = springback_map(part, Springback(law=law, percent=2.1))  # type: ignore[arg-type]
+    known = springback_map(_stated(part, law=law, percent=2.1))
     lost, turned = depth_loss(part, known), np.degrees(rim_slope_loss(part, known))
     assert lost > 0.0
-    assert percent_of(part, Springback(law=law, depth_loss=lost)) == pytest.approx(2.1, abs=1e-9)  # type: ignore[arg-type]
-    by_slope = Springback(law=law, rim_slope_loss_deg=float(turned))  # type: ignore[arg-type]
-    assert percent_of(part, by_slope) == pytest.approx(2.1, abs=1e-9)
+    assert percent_of(_stated(part, law=law, depth_loss=lost)) == pytest.approx(2.1, abs=1e-9)
+    assert percent_of(_stated(part, law=law, rim_slope_loss_deg=float(turned))) == pytest.approx(2.1, abs=1e-9)
 
 
 def test_one_percent_moves_the_rim_of_the_heater_by_nine_tenths_at_most() -> None:
@@ -79,6 +93,18 @@ def test_a_depth_loss_that_no_percentage_gives_is_refused() -> None:
         _on_mould(_part(), law="focal-length", depth_loss=80.0)
 
 
-def test_a_law_that_is_not_built_in_is_refused() -> None:
-    with pytest.raises(JobError, match=r'forming\.springback\.law: value is "bending"; allowed: none, focal-length'):
-        _on_mould(_part(), law="bending", flow_stress_mpa=100.0)
+def test_bending_opens_the_mid_surface_as_the_cubic_says() -> None:
+    part = _part()
+    on_mould = _on_mould(part, law="bending", flow_stress_mpa=12.0)
+    where = np.linspace(0.0, part.meridian.end, 11)
+    middle, released = (1.0 / (1.0 / curve.curvature(where) + 0.5) for curve in (on_mould, part.meridian))
+    share = 2.0 * 12.0 / np.sqrt(3.0) / (69000.0 / (1.0 - 0.33**2) * 1.0 * middle)
+    assert_allclose(released, middle * (1.0 - 3.0 * share + 4.0 * share**3), rtol=1e-11)
+    again = springback_map(_stated(part, law="bending", flow_stress_mpa=12.0)).release(on_mould)
+    assert_allclose(again.points(where), part.meridian.points(where), atol=1e-10)
+
+
+def test_an_absurd_estimate_is_refused_unless_accepted() -> None:
+    with pytest.raises(JobError, match=r'"bending", which predicts \d+\.?\d* % at radius 2\d\d.* allowed: up to 40 %'):
+        _on_mould(_part(), law="bending", flow_stress_mpa=60.0)
+    assert _on_mould(_part(), law="bending", flow_stress_mpa=60.0, accept_estimate=True).end > 0.0
