@@ -6,17 +6,18 @@ not needed to answer ``--help`` is imported by the command that needs it.
 
 from __future__ import annotations
 
+import io
 import json
 import os
 import sys
 from collections.abc import Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
-from profiles.errors import DishwrightError, JobError
+from profiles.errors import DishwrightError, GeometryError, JobError
 
 if TYPE_CHECKING:
     from fabricate.order import Order
@@ -39,6 +40,7 @@ AsJson = Annotated[bool, typer.Option("--json", help="Print one JSON object and 
 
 def main() -> None:
     """Run the command and leave with its exit code; the entry point of ``dishwright``."""
+    _settle_streams()
     code: int | str | None = PASSED
     try:
         app()
@@ -49,22 +51,35 @@ def main() -> None:
     sys.exit(code)
 
 
+def _settle_streams() -> None:
+    """Give what is closed a place to go, and let a character that cannot be shown be escaped."""
+    for name in ("stdout", "stderr"):
+        if getattr(sys, name) is None:
+            setattr(sys, name, open(os.devnull, "w", encoding="utf-8"))  # noqa: PTH123, SIM115 - open until the end
+    if isinstance(sys.stdout, io.TextIOWrapper):
+        sys.stdout.reconfigure(errors="backslashreplace")
+
+
 def _unwritable(error: OSError) -> int:
     """Say that standard output is full or closed, and drop what is still waiting for it: no traceback at the end."""
-    sys.stderr.write(
-        f"standard output: can't be written: {error.strerror}; allowed: room for the result; do: make room\n"
-    )
+    with suppress(OSError):
+        sys.stderr.write(
+            f"standard output: can't be written: {error.strerror}; allowed: room for the result; do: make room\n"
+        )
     os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
     return REFUSED
 
 
 @contextmanager
-def _refusals() -> Iterator[None]:
-    """Turn what the product refuses into a message and exit code 2."""
+def _refusals(job: Path | None = None) -> Iterator[None]:
+    """Turn what the product refuses into a message and exit code 2; what is said of a job begins with its file."""
     try:
         yield
     except DishwrightError as error:
-        typer.echo(str(error), err=True)
+        message, head = str(error), f"{job}: "
+        if job is not None and isinstance(error, JobError | GeometryError) and not message.startswith(head):
+            message = head + message
+        typer.echo(message, err=True)
         raise typer.Exit(REFUSED) from error
 
 
@@ -99,11 +114,11 @@ def make(
     as_json: AsJson = False,
 ) -> None:
     """Make the work package of a job: write it, read it back, prove it, and put it in its place."""
-    with _refusals():
+    source = job or DEMO
+    with _refusals(source):
         from fabricate.make import ProofFailedError, make_package
         from fabricate.summary import proof_lines, summary_json, summary_text
 
-        source = job or DEMO
         order = _order(source)
         try:
             made = make_package(order, output or Path(source.stem), replace=replace)
@@ -128,7 +143,7 @@ def prove(
     as_json: AsJson = False,
 ) -> None:
     """Read every file of a package back and measure it against the job's exact mould curve."""
-    with _refusals():
+    with _refusals(job):
         from fabricate.proof import prove_package
         from fabricate.summary import proof_lines
 
@@ -148,7 +163,7 @@ def table(
     stations: Annotated[int, typer.Option(min=2, max=1000, help="Number of stations, even in radius.")] = 17,
 ) -> None:
     """Print the sag-versus-radius table for the bench."""
-    with _refusals():
+    with _refusals(job):
         from fabricate.inspection import sag_columns, sag_table
         from outputs.table import aligned_text, table_text
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import tomllib
 from collections.abc import Iterable, Mapping
 from typing import Any
@@ -19,7 +20,7 @@ def settings(typed: Iterable[str]) -> dict[str, JobValue]:
     Parameters
     ----------
     typed : iterable of str
-        ``KEY=VALUE``; a value that is not TOML is taken for a text.
+        ``KEY=VALUE``; a value that is no text, switch, number or array of these in TOML is taken for a text.
 
     Returns
     -------
@@ -50,9 +51,17 @@ def settings(typed: Iterable[str]) -> dict[str, JobValue]:
 
 def _value(text: str) -> Any:
     try:
-        return tomllib.loads(f"value = {text}")["value"]
-    except (tomllib.TOMLDecodeError, RecursionError):
+        value = tomllib.loads(f"value = {text}")["value"]
+    except (ValueError, RecursionError):
         return text
+    return value if _is_job_value(value) else text
+
+
+def _is_job_value(value: object) -> bool:
+    """Whether a value is one that a job file holds: dates and tables are none."""
+    if isinstance(value, list):
+        return all(_is_job_value(item) for item in value)
+    return isinstance(value, str | bool | int | float)
 
 
 def new_job(given: Mapping[str, JobValue], *, with_turning: bool) -> tuple[str, tuple[str, ...]]:
@@ -77,6 +86,8 @@ def new_job(given: Mapping[str, JobValue], *, with_turning: bool) -> tuple[str, 
     JobError
         If a given key or value is not allowed.
     """
+    for key, value in given.items():
+        _check_printable(key, value)
     tables = ("turning",) if with_turning else ()
     text, gaps = starter_text(given, tables=tables), starter_gaps(given, tables=tables)
     try:
@@ -87,3 +98,13 @@ def new_job(given: Mapping[str, JobValue], *, with_turning: bool) -> tuple[str, 
         if said:
             raise JobError("\n".join(said)) from error
     return text, gaps
+
+
+def _check_printable(key: str, value: JobValue) -> None:
+    if isinstance(value, str) and not value.isprintable():
+        raise JobError(
+            f"{NAME}: {key}: value is {json.dumps(value)}; allowed: one line of printable characters; do: correct it"
+        )
+    if isinstance(value, list):
+        for item in value:
+            _check_printable(key, item)

@@ -53,7 +53,17 @@ class Spans:
         return np.maximum(np.abs(self.low), np.abs(self.high))
 
 
-def facet_spans(surface: Surface, vertices: Array, triangles: Rows, *, divisions: int = DIVISIONS) -> Spans:
+@dataclass(frozen=True, eq=False)
+class _Bounds:
+    """Bounds of the distance over facets, by how much they may be too wide, and the range met at the corners."""
+
+    low: Array
+    high: Array
+    slack: Array
+    met: tuple[Array, Array]
+
+
+def facet_spans(surface: Surface, vertices: Array, triangles: Rows, *, contact: Contact | None = None) -> Spans:
     """Return bounds of the signed distance between facets and a surface.
 
     Parameters
@@ -64,21 +74,32 @@ def facet_spans(surface: Surface, vertices: Array, triangles: Rows, *, divisions
         Corners in space [mm].
     triangles : ndarray of shape (m, 3)
         Row numbers of each facet's corners.
-    divisions : int
-        How often a facet on which the surface changes its kind may be divided in four.
+    contact : Contact, optional
+        What the surface is to the vertices, where that is known.
 
     Returns
     -------
     Spans
         Never narrower than any sampling finds, to rounding.
     """
-    contact = surface.touch(vertices)
+    bounds = _bounds(surface, vertices, triangles, contact or surface.touch(vertices))
+    here = np.flatnonzero(bounds.slack > 0.0)
+    if len(here):
+        wide = _Bounds(
+            bounds.low[here], bounds.high[here], bounds.slack[here], (bounds.met[0][here], bounds.met[1][here])
+        )
+        bounds.low[here], bounds.high[here] = _narrowed(surface, vertices[triangles[here]], wide)
+    return Spans(bounds.low, bounds.high)
+
+
+def _bounds(surface: Surface, vertices: Array, triangles: Rows, contact: Contact) -> _Bounds:
     corners = vertices[triangles]
     beside = 0.5 * longest_sides(corners)
     feet = contact.where[triangles]
     bends = surface.bends(least(feet) - beside, most(feet) + beside)
     values = contact.distance[triangles]
-    low, high = least(values), most(values)
+    met = least(values), most(values)
+    low, high = met[0].copy(), met[1].copy()
     kinds, slack = _kinds(bends, corners, contact.gradient[triangles])
     for kind in (CONVEX, CONCAVE):
         here = np.flatnonzero(kinds == kind)
@@ -88,13 +109,28 @@ def facet_spans(surface: Surface, vertices: Array, triangles: Rows, *, divisions
     here = np.flatnonzero(kinds == SADDLE)
     if len(here):
         low[here], high[here] = _saddle(surface, vertices, triangles[here], contact)
-    low, high = low - slack, high + slack
-    here = np.flatnonzero(slack > NEGLIGIBLE * (high - low) + 1e-10)
-    if len(here) and divisions:
-        parts = facet_spans(surface, *_quarters(corners[here]), divisions=divisions - 1)
-        low[here] = np.maximum(low[here], least(parts.low.reshape(-1, 4)))
-        high[here] = np.minimum(high[here], most(parts.high.reshape(-1, 4)))
-    return Spans(low, high)
+    return _Bounds(low - slack, high + slack, slack, met)
+
+
+def _narrowed(surface: Surface, corners: Array, bounds: _Bounds) -> tuple[Array, Array]:
+    """Return narrower bounds for facets (m, 3, 3), dividing each where it may leave the range met on it so far."""
+    allowed = NEGLIGIBLE * (bounds.high - bounds.low) + 1e-10
+    low, high = bounds.met[0].copy(), bounds.met[1].copy()
+    met_low, met_high = low.copy(), high.copy()
+    facet = np.arange(len(corners))
+    for division in range(DIVISIONS + 1):
+        np.minimum.at(met_low, facet, bounds.met[0])
+        np.maximum.at(met_high, facet, bounds.met[1])
+        beyond = (bounds.low < met_low[facet] - allowed[facet]) | (bounds.high > met_high[facet] + allowed[facet])
+        open_ = beyond & (bounds.slack > 0.0) & (division < DIVISIONS)
+        np.minimum.at(low, facet[~open_], bounds.low[~open_])
+        np.maximum.at(high, facet[~open_], bounds.high[~open_])
+        if not open_.any():
+            break
+        vertices, triangles = _quarters(corners[open_])
+        facet, corners = np.repeat(facet[open_], 4), vertices[triangles]
+        bounds = _bounds(surface, vertices, triangles, surface.touch(vertices))
+    return low, high
 
 
 def _kinds(bends: Bends, corners: Array, gradients: Array) -> tuple[Kinds, Array]:
@@ -103,36 +139,70 @@ def _kinds(bends: Bends, corners: Array, gradients: Array) -> tuple[Kinds, Array
     A function becomes convex when a quadratic is added that outweighs what bends the other way, and a facet is then
     out by at most a sixth of that quadratic along its sides.
     """
-    against = (
-        np.maximum(-bends.along_least, 0.0), np.maximum(-bends.around_least, 0.0),
-        np.maximum(bends.along_most, 0.0), np.maximum(bends.around_most, 0.0),
-    )  # fmt: skip
-    kinds = np.full(len(corners), SADDLE, dtype=np.int8)
+    convex = (bends.along_least >= 0.0) & (bends.around_least >= 0.0)
+    concave = (bends.along_most <= 0.0) & (bends.around_most <= 0.0)
+    saddle = ((bends.along_least >= 0.0) & (bends.around_most <= 0.0)) | (
+        (bends.along_most <= 0.0) & (bends.around_least >= 0.0)
+    )
+    kinds = np.select([convex, concave, saddle], [CONVEX, CONCAVE, SADDLE], CONVEX).astype(np.int8)
     slack = np.zeros(len(corners))
-    one_way = ((against[0] == 0.0) & (against[3] == 0.0)) | ((against[2] == 0.0) & (against[1] == 0.0))
-    mixed = ~one_way
-    squares = _side_squares(corners, gradients)
-    out = [_weighed(squares, against[0], against[1]) / 6.0, _weighed(squares, against[2], against[3]) / 6.0]
-    kinds[out[0] == 0.0] = CONVEX
-    kinds[(out[0] > 0.0) & (out[1] == 0.0)] = CONCAVE
-    convex = out[0] <= out[1]
-    kinds[mixed & convex], kinds[mixed & ~convex] = CONVEX, CONCAVE
-    slack[mixed] = np.minimum(out[0], out[1])[mixed]
+    mixed = np.flatnonzero(~(convex | concave | saddle))
+    if len(mixed):
+        squares = _side_squares(corners[mixed], gradients[mixed])
+        below = _weighed(
+            squares, np.maximum(-bends.along_least, 0.0)[mixed], np.maximum(-bends.around_least, 0.0)[mixed]
+        )
+        above = _weighed(squares, np.maximum(bends.along_most, 0.0)[mixed], np.maximum(bends.around_most, 0.0)[mixed])
+        kinds[mixed] = np.where(below <= above, CONVEX, CONCAVE)
+        slack[mixed] = np.minimum(below, above) / 6.0
     return kinds, slack
 
 
 def least(values: Array) -> Array:
-    """Return the least of a few columns; numpy's own reduction is slow along short rows."""
+    """Return the least of a few columns, faster than by a reduction along short rows.
+
+    Parameters
+    ----------
+    values : ndarray of shape (m, k)
+        Values in any unit.
+
+    Returns
+    -------
+    ndarray of shape (m,)
+        The least of each row, in the same unit.
+    """
     return np.asarray(np.min(np.ascontiguousarray(values.T), axis=0))
 
 
 def most(values: Array) -> Array:
-    """Return the largest of a few columns."""
+    """Return the largest of a few columns, as `least` does.
+
+    Parameters
+    ----------
+    values : ndarray of shape (m, k)
+        Values in any unit.
+
+    Returns
+    -------
+    ndarray of shape (m,)
+        The largest of each row, in the same unit.
+    """
     return np.asarray(np.max(np.ascontiguousarray(values.T), axis=0))
 
 
 def longest_sides(corners: Array) -> Array:
-    """Return the longest side of facets (m, 3, 3)."""
+    """Return the longest side of each facet.
+
+    Parameters
+    ----------
+    corners : ndarray of shape (m, 3, 3)
+        Three corners of each facet [mm].
+
+    Returns
+    -------
+    ndarray of shape (m,)
+        Lengths [mm].
+    """
     sides = (corners[:, one] - corners[:, other] for one, other in ((0, 1), (1, 2), (2, 0)))
     return np.asarray(np.sqrt(np.max([np.einsum("mx,mx->m", side, side) for side in sides], axis=0)))
 

@@ -136,56 +136,45 @@ def mesh_deviation(solid: Solid, corners: Array, normals: Array, *, chord_error:
 def _measured(
     surfaces: tuple[TurnedCurve, *tuple[Surface, ...]], whole: Topology, corners: Array, chord_error: float
 ) -> _Facets:
-    limits = (surfaces[0].curve.start, surfaces[0].curve.end, chord_error)
     contacts = [surface.touch(whole.vertices) for surface in surfaces]
     apart = np.stack([most(contact.apart[whole.triangles]) for contact in contacts])
+    feet, curve = contacts[0].where[whole.triangles], surfaces[0].curve
+    # A facet of the edge or of a bore touches the forming surface with corners on its last or first ring alone.
+    apart[0, least(feet) >= curve.end - 0.5 * chord_error] = np.inf
+    apart[0, most(feet) <= curve.start + 0.5 * chord_error] = np.inf
+    owners = np.argmin(apart, axis=0)
+    near = apart <= apart.min(axis=0) + 2.0 * chord_error
+    several = near.sum(axis=0) > 1
     normals = facet_normals(corners)
-    owners = _owners(contacts, whole.triangles, apart, normals, limits)
     count = len(owners)
-    strayed, lean, facing = np.empty(count), np.empty((count, 3)), np.empty(count)
+    strayed, lean, facing = np.full(count, np.inf), np.zeros((count, 3)), np.full(count, -1.0)
     for number, (surface, contact) in enumerate(zip(surfaces, contacts, strict=True)):
-        here = np.flatnonzero(owners == number)
-        if len(here):
-            strayed[here] = _distances(surface, whole, here, (apart[number, here], chord_error))
-            lean[here], facing[here] = _leans(contact, whole.triangles[here], normals[here])
+        here = np.flatnonzero((owners == number) & ~several | near[number] & several)
+        if not len(here):
+            continue
+        found = _distances(surface, contact, whole, (here, apart[number, here], chord_error))
+        leans, cosines = _leans(contact, whole.triangles[here], normals[here])
+        # Of several stretches the one that a facet faces with, and then the one that it strays from least.
+        better = ((cosines > 0.0) & (facing[here] <= 0.0)) | (
+            ((cosines > 0.0) == (facing[here] > 0.0)) & (found < strayed[here])
+        )
+        taken = here[better]
+        owners[taken], strayed[taken] = number, found[better]
+        lean[taken], facing[taken] = leans[better], cosines[better]
     return _Facets(owners, strayed, lean, facing)
 
 
-def _owners(
-    contacts: list[Contact], triangles: Rows, apart: Array, normals: Array, limits: tuple[float, float, float]
-) -> Rows:
-    """Return which stretch each facet belongs to: the one its corners lie on, and of several the one it faces with."""
-    feet = contacts[0].where[triangles]
-    first, last, chord_error = limits
-    # A facet of the edge or of a bore touches the forming surface with corners on its last or first ring alone.
-    beside = (least(feet) >= last - 0.5 * chord_error) | (most(feet) <= first + 0.5 * chord_error)
-    apart = np.vstack([np.where(beside, np.inf, apart[0]), apart[1:]])
-    owners = np.argmin(apart, axis=0)
-    near = apart <= apart.min(axis=0) + 2.0 * chord_error
-    several = np.flatnonzero(near.sum(axis=0) > 1)
-    if len(several):
-        facing = [
-            np.where(near[number, several], _leans(contact, triangles[several], normals[several])[1], -np.inf)
-            for number, contact in enumerate(contacts)
-        ]
-        owners[several] = np.argmax(facing, axis=0)
-    return np.asarray(owners)
-
-
-def _distances(surface: Surface, whole: Topology, here: Rows, near: tuple[Array, float]) -> Array:
-    """Return the largest distance of each of some facets from a stretch [mm]."""
-    apart, chord_error = near
-    used, triangles = np.unique(whole.triangles[here], return_inverse=True)
-    triangles = triangles.reshape(-1, 3)
-    vertices = whole.vertices[used]
+def _distances(surface: Surface, contact: Contact, whole: Topology, chosen: tuple[Rows, Array, float]) -> Array:
+    """Return the largest distance of each of some facets from a stretch [mm]; chosen by row and how far they are."""
+    here, apart, chord_error = chosen
+    triangles = whole.triangles[here]
+    off = apart > CORNER * chord_error
     # Far off, the bounds by the surface's bending no longer hold, but no distance grows faster than the way.
-    found = np.where(apart > CORNER * chord_error, apart + longest_sides(vertices[triangles]), 0.0)
+    found = np.where(off, apart + longest_sides(whole.vertices[triangles]), 0.0)
     close = np.flatnonzero(apart <= _reach(surface))
     if len(close):
-        spans = facet_spans(surface, vertices, triangles[close])
-        found[close] = np.where(
-            apart[close] > CORNER * chord_error, np.maximum(spans.largest, apart[close]), spans.largest
-        )
+        spans = facet_spans(surface, whole.vertices, triangles[close], contact=contact)
+        found[close] = np.where(off[close], np.maximum(spans.largest, apart[close]), spans.largest)
     return found
 
 

@@ -82,7 +82,18 @@ def topology(corners: Array, normals: Array) -> Topology:
 
 
 def facet_normals(corners: Array) -> Array:
-    """Return the unit normals of the winding of facets (m, 3, 3), 0 where a facet has no area."""
+    """Return the unit normals that the winding of facets gives them.
+
+    Parameters
+    ----------
+    corners : ndarray of shape (m, 3, 3)
+        Three corners of each facet [mm].
+
+    Returns
+    -------
+    ndarray of shape (m, 3)
+        Unit vectors [-]; 0 where a facet has no area.
+    """
     normals = np.cross(corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0])
     return np.asarray(normals / np.maximum(np.linalg.norm(normals, axis=1), 1e-300)[:, None])
 

@@ -81,6 +81,11 @@ def chain_rings(
     -------
     Chain
         Ends in a pole, or in the ring where it began on a bored solid.
+
+    Raises
+    ------
+    GeometryError
+        If no rings are found that keep the spread on the forming surface.
     """
     forming, *body = surfaces
     bored = float(forming.curve.radius(forming.curve.start)) > 1e-9 * float(forming.curve.radius(forming.curve.end))

@@ -210,7 +210,20 @@ class Metric:
 
 
 def worth(side: Array, radius: float) -> Array:
-    """Return what area isosceles triangles over a side cover, two by two."""
+    """Return what area isosceles triangles over a side cover, two by two.
+
+    Parameters
+    ----------
+    side : ndarray
+        The side, in the metric.
+    radius : float
+        Circumradius that the triangles may have, in the metric.
+
+    Returns
+    -------
+    ndarray
+        Side times height; 0 where no such triangle has so small a circumradius.
+    """
     return side * _isosceles(side, radius)
 
 

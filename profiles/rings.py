@@ -91,6 +91,11 @@ def forming_rings(surface: TurnedCurve, spread: float, *, start: int, end: int, 
     -------
     RingRow
         Rings whose facets keep the spread.
+
+    Raises
+    ------
+    GeometryError
+        If no rings are found that do.
     """
     radius = sqrt(2.0 * spread)
     task = _Task(surface, Metric.of(surface.curve, radius), spread, (start, end), ease)
@@ -163,7 +168,23 @@ def _one_band(task: _Task, radius: float) -> RingRow:
 
 
 def triangle_count(counts: list[int]) -> int:
-    """Return how many triangles the strips between rings of given counts have."""
+    """Return how many triangles the strips between rings of given counts have.
+
+    Parameters
+    ----------
+    counts : list of int
+        Vertices of each ring, 1 for a pole.
+
+    Returns
+    -------
+    int
+        Number of triangles.
+
+    Examples
+    --------
+    >>> triangle_count([1, 6, 12])
+    24
+    """
     several = [0 if count == 1 else count for count in counts]
     return 2 * sum(several) - several[0] - several[-1]
 

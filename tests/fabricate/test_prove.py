@@ -228,6 +228,14 @@ def test_a_curve_of_another_course(change: str, package: Path) -> None:
     findings(package, DRAWING)
 
 
+@pytest.mark.parametrize("count", [4000, 6000])
+def test_a_curve_of_thousands_of_vertices(count: int, package: Path) -> None:
+    radius = np.linspace(0.0, 33.0, count)
+    place = -(radius**2) / (4.0 * FOCAL) + np.where(np.arange(count) % 2, 1.0, -1.0)
+    redraw(package, on_curve(lambda _: [(x, y, 0.0) for x, y in zip(place, radius, strict=True)]))
+    assert "strays by" in findings(package, DRAWING)
+
+
 def test_a_second_curve(package: Path) -> None:
     document = ezdxf.readfile(package / DRAWING)
     document.modelspace().add_lwpolyline([(0.0, 0.0), (1.0, 1.0)], dxfattribs={"layer": "MOULD_CURVE"})
