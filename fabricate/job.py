@@ -30,6 +30,7 @@ __all__ = ["Job", "job_hash", "job_text", "parse_job", "questions", "read_job"]
 _LARGEST_FILE = 1_000_000
 _MOST_FINDINGS = 40
 _PLACE = re.compile(r"\(at line (\d+), column (\d+)\)")
+_BARE_POINT = re.compile(r"=\s*[+-]?(\.\d|\d+\.\s*(#|$))")
 _COMMA_IN_NUMBER = re.compile(r"=\s*[+-]?\d+,\d+\s*(#.*)?$")
 # A key that follows from others is not missing when one of those was typed: what is wrong is said of that one.
 _STANDS_FOR = {
@@ -139,6 +140,10 @@ def _syntax(text: str, message: str) -> str:
     typed = text.splitlines()[line - 1] if line <= len(text.splitlines()) else ""
     if _COMMA_IN_NUMBER.search(typed):
         return f"{where}: {typed.strip()}; allowed: numbers with a decimal point; do: a point is the decimal mark"
+    if _BARE_POINT.search(typed):
+        return (
+            f"{where}: {typed.strip()}; allowed: a digit on both sides of the point; do: write 0.5 for .5, 5.0 for 5."
+        )
     return f"{where}: {typed.strip()[:80]}; allowed: TOML, key = value; do: correct the line"
 
 

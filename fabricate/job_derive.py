@@ -168,7 +168,8 @@ def gauge_in_units(facts: Facts) -> float:
         If the system or the number is unknown.
     """
     thickness = gauge_thickness(facts["sheet.gauge"], facts["sheet.gauge_system"])
-    return thickness / MM_PER_INCH if facts.units == "inch" else thickness
+    # Twelve digits: 0.036 in is 0.9144 mm, not 0.9143999999999999.
+    return float(f"{thickness / MM_PER_INCH if facts.units == 'inch' else thickness:.12g}")
 
 
 def _focal_length(facts: Facts) -> float:

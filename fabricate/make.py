@@ -79,7 +79,12 @@ def make_package(order: Order, folder: Path, *, replace: bool = False) -> MadePa
         If the folder cannot be written or holds something else.
     """
     contents = _contents(order)
-    with staged(folder, replace=replace, same_package=lambda found: _is_same_package(found, order)) as place:
+    with staged(
+        folder,
+        replace=replace,
+        same_package=lambda found: _is_same_package(found, order),
+        expendable=lambda found: _is_unfilled(found / TABLE),
+    ) as place:
         for name in order.file_names:
             contents[name](place / name)
         proof = prove_files(order, place)
@@ -119,10 +124,13 @@ def _is_same_package(folder: Path, order: Order) -> bool:
         return False
     if (folder / JOB).read_bytes() != order.text.encode("utf-8"):
         return False
-    return not (folder / TABLE).exists() or _is_unfilled(folder / TABLE)
+    return _is_unfilled(folder / TABLE)
 
 
 def _is_unfilled(table: Path) -> bool:
+    """Whether a sag table, where there is one, holds no readings."""
+    if not table.exists():
+        return True
     try:
         columns = read_table(table)
     except FormatError:

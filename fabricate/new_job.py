@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 import tomllib
 from collections.abc import Iterable, Mapping
 from typing import Any
@@ -12,6 +13,7 @@ from fabricate.starter import JobValue, starter_gaps, starter_text
 from profiles.errors import JobError
 
 NAME = "new job"
+_BARE_POINT = re.compile(r"[+-]?(\.\d+|\d+\.)")
 
 
 def settings(typed: Iterable[str]) -> dict[str, JobValue]:
@@ -53,7 +55,7 @@ def _value(text: str) -> Any:
     try:
         value = tomllib.loads(f"value = {text}")["value"]
     except (ValueError, RecursionError):
-        return text
+        return float(text) if _BARE_POINT.fullmatch(text) else text
     return value if _is_job_value(value) else text
 
 

@@ -72,4 +72,34 @@ def _soft_mould(order: Order) -> str:
     )
 
 
-_NOTICES: tuple[Callable[[Order], str], ...] = (_no_program, _wide_bore, _deep_cavity, _soft_mould)
+def _nothing_to_clamp(order: Order) -> str:
+    forming, mould = order.job.forming, order.job.mould
+    if forming.process != "straight-vacuum" or mould.land_width > 0.0 or mould.outer_diameter > 0.0:
+        return ""
+    return (
+        f'mould.land_width is {mould.land_width:g} with process "{forming.process}": there is no land for the sheet '
+        "to seal on; is there a frame beside the mould?"
+    )
+
+
+def _short_thickness_table(order: Order) -> str:
+    rows = order.job.forming.thinning.stations
+    if not rows:
+        return ""
+    rim = 0.5 * order.job.reflector.rim_diameter
+    if rows[0][0] <= 0.5 * order.job.reflector.hole_diameter and rows[-1][0] >= rim:
+        return ""
+    return (
+        f"forming.thinning.stations runs from radius {rows[0][0]:g} to {rows[-1][0]:g} {order.job.units} and the rim "
+        f"lies at {rim:g}: beyond its rows the thickness is taken to stay as it is there"
+    )
+
+
+_NOTICES: tuple[Callable[[Order], str], ...] = (
+    _no_program,
+    _wide_bore,
+    _deep_cavity,
+    _soft_mould,
+    _nothing_to_clamp,
+    _short_thickness_table,
+)

@@ -117,12 +117,13 @@ def _tool(job: Job, setup: Setup) -> list[str]:
     across, along = (setup.text(value) for value in setup.control_shift)
     point = "nose centre"
     if turning.control_point == "imaginary-tip":
-        point = f"imaginary tip: nose centre {across} in radius, {along} in Z"
+        point = f"imaginary tip: from the nose centre, radius {across} and Z {along}"
     ridges = finish_roughness(turning.finishing_feed, setup.nose)
     roughness = f"{1e3 * ridges:.1f} um" if job.units == "mm" else f"{1e6 * ridges / setup.unit:.0f} microinch"
     return [
-        f"insert: nose radius {setup.text(setup.nose)}, {turning.tool_post} tool post",
+        f"insert: nose radius {setup.text(setup.nose)}, {turning.tool_post} tool post, neutral: it cuts in and out",
         f"X and Z are of the {point}",
+        "tool, work offset and coolant are not called here: call them before, as the control wants it",
         "the nose is in the path: keep G40, and neither nose radius nor tip number in the tool table",
         *_clearances(setup),
         f"finishing feed {turning.finishing_feed / setup.unit:.4f}: ridges of {roughness}, f squared / 8 r",

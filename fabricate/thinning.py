@@ -99,13 +99,45 @@ def straight_vacuum(sheet: FormedSheet, _stated: Thinning) -> Series:
 
 
 def stations(sheet: FormedSheet, stated: Thinning) -> Series:
-    """Return a measured table of radius on the finished face and thickness [mm], PCHIP between its rows."""
+    """Return a measured table of radius on the finished face and thickness [mm].
+
+    PCHIP between its rows, constant beyond them. A table that reaches the axis with a slope is rounded off there, as
+    little as will do, for else the mould would end in a point or a dimple.
+    """
     rows = np.array(stated.stations)
     table = table_over_radius(rows[:, 0], rows[:, 1])
-    curve = sheet.on_mould
-    breaks = merged_breaks(curve.breaks, arc_lengths_at(sheet.released, rows[:, 0]), start=curve.start, end=curve.end)
-    (thickness,) = resolve(lambda where: table(sheet.released.radius(where))[None], breaks, sizes=[sheet.thickness])
+    curve, released = sheet.on_mould, sheet.released
+    rounded = _rounding_radius(table, sheet, rows[:, 0])
+    breaks = merged_breaks(
+        curve.breaks,
+        arc_lengths_at(released, np.append(rows[:, 0], rounded)),
+        start=curve.start,
+        end=curve.end,
+    )
+    (thickness,) = resolve(
+        lambda where: table(_kept_off_axis(released.radius(where), rounded))[None], breaks, sizes=[sheet.thickness]
+    )
     return thickness
+
+
+def _rounding_radius(table: Callable[[Array], Array], sheet: FormedSheet, radii: Array) -> float:
+    """Return the radius within which a slope of the table at the axis is rounded off [mm]; 0 for none.
+
+    Rounded off within R, a slope T' bends the mould by up to 1.85 T'/R: R is such that a third of the face's curvature
+    is left, but it never reaches past the table's first row.
+    """
+    step = 1e-6 * sheet.released.end
+    slope = abs(float(np.diff(table(np.array([0.0, step])))[0])) / step
+    first_row = float(radii[radii > 0.0][0]) if (radii > 0.0).any() else 0.0
+    return min(3.0 * slope / float(sheet.released.curvature(sheet.released.start)), first_row) if slope > 1e-9 else 0.0
+
+
+def _kept_off_axis(radius: Array, within: float) -> Array:
+    """Return the radius, smoothly kept at ``within/√3`` or more: level at the axis and unchanged from ``within`` on."""
+    if within == 0.0:
+        return radius
+    lift = np.maximum(1.0 - (radius / within) ** 2, 0.0) ** 3
+    return np.asarray(np.sqrt(radius**2 + within**2 / 3.0 * lift))
 
 
 LAWS: Mapping[str, Law] = {

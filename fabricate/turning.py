@@ -231,7 +231,7 @@ def _forming_hollow(setup: Setup) -> float:
 def _notes(setup: Setup, limits: Limits) -> tuple[str, ...]:
     held = setup.text(setup.reach)
     notes = [
-        f"the outside is turned down to Z {held} {setup.units}, short of the base: the rest is held in the lathe"
+        f"the outside is turned down to Z {held} {setup.units}: what is left is for a faceplate or screws, not for jaws"
         if setup.male
         else "the outside of a cavity is not turned by this program, as its insert cannot: true the stock before",
         "the flanks and holder of the insert are not known here: the program's header says what they must clear",

@@ -29,7 +29,13 @@ __all__ = ["staged", "write_file"]
 
 
 @contextmanager
-def staged(folder: Path, *, replace: bool, same_package: Callable[[Path], bool]) -> Iterator[Path]:
+def staged(
+    folder: Path,
+    *,
+    replace: bool,
+    same_package: Callable[[Path], bool],
+    expendable: Callable[[Path], bool] = lambda _: True,
+) -> Iterator[Path]:
     """Lend a fresh folder to write into, and move it to its place when all went well.
 
     Parameters
@@ -40,6 +46,8 @@ def staged(folder: Path, *, replace: bool, same_package: Callable[[Path], bool])
         Whether whatever stands there may become FOLDER.previous.
     same_package : callable
         Tells of a folder that is not empty whether it may be rewritten without ``replace``.
+    expendable : callable
+        Tells of an older FOLDER.previous that holds a package whether it may be removed.
 
     Yields
     ------
@@ -64,7 +72,7 @@ def staged(folder: Path, *, replace: bool, same_package: Callable[[Path], bool])
             undo.callback(shutil.rmtree, stage, ignore_errors=True)
             yield stage
             if taken:
-                _exchange(stage, place, replace=replace)
+                _exchange(stage, place, replace=replace, expendable=expendable)
             else:
                 _move_in(stage, place)
         except OSError as error:
@@ -161,7 +169,16 @@ def _check_previous_is_package(previous: Path, stage: Path) -> None:
             )
 
 
-def _exchange(stage: Path, place: Path, *, replace: bool) -> None:
+def _check_expendable(previous: Path, expendable: Callable[[Path], bool]) -> None:
+    """Refuse to remove an older FOLDER.previous that somebody has written in."""
+    if not expendable(previous):
+        raise WriteError(
+            f"{previous}: holds a package that was written in, such as readings, and would be lost; allowed: no such "
+            f"folder, or an untouched package; do: move it away"
+        )
+
+
+def _exchange(stage: Path, place: Path, *, replace: bool, expendable: Callable[[Path], bool]) -> None:
     """Put the finished package in the place of what stands there, or undo all of it."""
     outdated = _sibling(place)
     with ExitStack() as undo:
@@ -169,6 +186,7 @@ def _exchange(stage: Path, place: Path, *, replace: bool) -> None:
             previous = _previous(place)
             if previous.is_dir():
                 _check_previous_is_package(previous, stage)
+                _check_expendable(previous, expendable)
                 _rename(previous, outdated, undo)
             _rename(place, previous, undo)
         else:
