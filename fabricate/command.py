@@ -103,7 +103,7 @@ def make(
     output: Annotated[
         Path | None,
         typer.Option(
-            "--output", "-o", metavar="FOLDER", help="Where the package goes; else a folder named after the job."
+            "--output", "-o", metavar="FOLDER", help="Where the package goes; else one named after the job file."
         ),
     ] = None,
     *,
@@ -127,7 +127,7 @@ def make(
             if as_json:
                 _print_json({"proof": error.proof.as_json()})
             else:
-                typer.echo("\n".join(proof_lines(error.proof)))
+                typer.echo("\n".join(proof_lines(error.proof, order.job.units)))
             raise typer.Exit(FAILED) from error
         if as_json:
             _print_json(summary_json(order, made))
@@ -147,11 +147,12 @@ def prove(
         from fabricate.proof import prove_package
         from fabricate.summary import proof_lines
 
-        proof = prove_package(_order(job), folder)
-    if as_json:
-        _print_json(proof.as_json())
-    else:
-        typer.echo("\n".join(proof_lines(proof)))
+        order = _order(job)
+        proof = prove_package(order, folder)
+        if as_json:
+            _print_json(proof.as_json())
+        else:
+            typer.echo("\n".join(proof_lines(proof, order.job.units)))
     raise typer.Exit(PASSED if proof.passed else FAILED)
 
 
@@ -195,13 +196,13 @@ def new(  # noqa: PLR0913 - each option is a parameter
     ] = None,
     title: Annotated[str | None, typer.Option(help="What the part is called.")] = None,
     units: Annotated[str | None, typer.Option(help="mm or inch.")] = None,
-    focal_length: Annotated[float | None, typer.Option(help="Of the reflecting face.")] = None,
-    depth: Annotated[float | None, typer.Option(help="Vertex to rim plane, instead of the focal length.")] = None,
-    rim_diameter: Annotated[float | None, typer.Option(help="On the reflecting face.")] = None,
-    hole_diameter: Annotated[float | None, typer.Option(help="Of a central hole.")] = None,
+    focal_length: Annotated[str | None, typer.Option(help="Of the reflecting face.")] = None,
+    depth: Annotated[str | None, typer.Option(help="Vertex to rim plane, instead of the focal length.")] = None,
+    rim_diameter: Annotated[str | None, typer.Option(help="On the reflecting face.")] = None,
+    hole_diameter: Annotated[str | None, typer.Option(help="Of a central hole.")] = None,
     reflecting_face: Annotated[str | None, typer.Option(help="concave or convex.")] = None,
     material: Annotated[str | None, typer.Option(help="Of the sheet; see `dishwright materials`.")] = None,
-    thickness: Annotated[float | None, typer.Option(help="Of the sheet.")] = None,
+    thickness: Annotated[str | None, typer.Option(help="Of the sheet.")] = None,
     gauge: Annotated[str | None, typer.Option(help="Of the sheet, with its system, instead of the thickness.")] = None,
     gauge_system: Annotated[str | None, typer.Option(help="AWG, SWG, USG or MSG.")] = None,
     process: Annotated[
@@ -219,28 +220,34 @@ def new(  # noqa: PLR0913 - each option is a parameter
     stated = {
         "title": title,
         "units": units,
-        "reflector.focal_length": focal_length,
-        "reflector.depth": depth,
-        "reflector.rim_diameter": rim_diameter,
-        "reflector.hole_diameter": hole_diameter,
         "reflector.reflecting_face": reflecting_face,
         "sheet.material": material,
-        "sheet.thickness": thickness,
         "sheet.gauge": gauge,
         "sheet.gauge_system": gauge_system,
         "forming.process": process,
         "forming.contact_face": contact_face,
         "mould.material": mould_material,
     }
+    measured = {
+        "reflector.focal_length": focal_length,
+        "reflector.depth": depth,
+        "reflector.rim_diameter": rim_diameter,
+        "reflector.hole_diameter": hole_diameter,
+        "sheet.thickness": thickness,
+    }
     with _refusals():
-        from fabricate.new_job import new_job, settings
+        from fabricate.new_job import new_job, settings, typed_number, unknown_sheet
 
-        given = {key: value for key, value in stated.items() if value is not None} | settings(setting or ())
+        numbers = {key: typed_number(text) for key, text in measured.items() if text is not None}
+        given = {key: value for key, value in stated.items() if value is not None} | numbers | settings(setting or ())
         text, gaps = new_job(given, with_turning=turning)
         if output is None:
             typer.echo(text, nl=False)
         else:
             _write_new(output, text)
+            typer.echo(f"{output}: written", err=True)
+    if strange := unknown_sheet(given):
+        typer.echo(strange, err=True)
     if gaps:
         typer.echo("still to be stated: " + ", ".join(gaps), err=True)
 

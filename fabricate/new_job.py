@@ -9,6 +9,7 @@ from collections.abc import Iterable, Mapping
 from typing import Any
 
 from fabricate.job import parse_job
+from fabricate.materials import has_material, nearest_names
 from fabricate.starter import JobValue, starter_gaps, starter_text
 from profiles.errors import JobError
 
@@ -64,6 +65,49 @@ def _is_job_value(value: object) -> bool:
     if isinstance(value, list):
         return all(_is_job_value(item) for item in value)
     return isinstance(value, str | bool | int | float)
+
+
+def typed_number(text: str) -> JobValue:
+    """Return a number as it was typed, or the text itself, for the job's reader to refuse.
+
+    Parameters
+    ----------
+    text : str
+        What was typed.
+
+    Returns
+    -------
+    float or str
+        A point without a digit beside it is no matter here.
+
+    Examples
+    --------
+    >>> typed_number(".5"), typed_number("1/8")
+    (0.5, '1/8')
+    """
+    value = _value(text.strip())
+    return float(value) if isinstance(value, int) and not isinstance(value, bool) else value
+
+
+def unknown_sheet(given: Mapping[str, JobValue]) -> str:
+    """Return a remark on a sheet that the table lacks and whose properties are not given, or an empty text.
+
+    Parameters
+    ----------
+    given : mapping
+        Value by dotted key.
+
+    Returns
+    -------
+    str
+        With the names that come near.
+    """
+    name = given.get("sheet.material")
+    if name is None or has_material(str(name), "sheet") or any(key.startswith("sheet.properties.") for key in given):
+        return ""
+    near = ", ".join(nearest_names(str(name), "sheet"))
+    hint = f"; near: {near}" if near else ""
+    return f'sheet.material "{name}" is not in the table, so its properties are asked for{hint}'
 
 
 def new_job(given: Mapping[str, JobValue], *, with_turning: bool) -> tuple[str, tuple[str, ...]]:

@@ -8,7 +8,9 @@ from typing import Any
 
 import numpy as np
 
+from fabricate.drawing import unit_length
 from fabricate.make import MadePackage
+from fabricate.measures import Units
 from fabricate.notices import notices
 from fabricate.order import Order
 from fabricate.proof import Proof
@@ -20,6 +22,7 @@ MEANING = (
     "Proved means that the files match the mould curve of the stated model. What the part will be depends on the "
     "springback and the thickness that the job states: measure the first part."
 )
+UNIT_NAMES = {"mm": "mm", "inch": "in"}
 PLACES = {"male": "male mould (chuck)", "female": "female mould (cavity)"}
 
 
@@ -96,7 +99,7 @@ def mould_figures(order: Order) -> MouldFigures:
 
 def _springback_words(order: Order) -> str:
     """Say which way the reflecting face moves on release: depth, opening and slope at the rim's material point."""
-    chain, unit, name = order.chain, order.unit, order.job.units
+    chain, unit, name = order.chain, order.unit, UNIT_NAMES[order.job.units]
     on_mould, part, rim = chain.on_mould, chain.released.meridian, chain.released.rim
     deeper = float(on_mould.height(rim) - part.height(rim)) / unit
     opened = 2.0 * float(part.radius(rim) - on_mould.radius(rim)) / unit
@@ -155,7 +158,7 @@ def summary_text(order: Order, made: MadePackage) -> str:
     parts = (
         [head],
         _mould_lines(order),
-        proof_lines(made.proof),
+        proof_lines(made.proof, order.job.units),
         _warning_lines(order),
         wrap(MEANING, WIDTH),
         [f"The package is in {made.folder}"],
@@ -163,36 +166,40 @@ def summary_text(order: Order, made: MadePackage) -> str:
     return "\n\n".join("\n".join(lines) for lines in parts if lines) + "\n"
 
 
-def proof_lines(proof: Proof) -> list[str]:
+def proof_lines(proof: Proof, units: Units) -> list[str]:
     """Return the proof as a table for people, with every finding under it.
 
     Parameters
     ----------
     proof : Proof
         What was found.
+    units : {"mm", "inch"}
+        Units of the job, in which lengths are shown.
 
     Returns
     -------
     list of str
-        A line for each file: largest deviation [mm], its radius [mm], lean [mrad], tolerance [mm] and verdict.
+        A line for each file: largest deviation, its radius, lean [mrad], tolerance and verdict.
     """
     lines = [f"{'file':<18}{'deviation':>12}{'at radius':>12}{'lean':>12}{'allowed':>12}"]
     for name, verdict in proof.files.items():
-        allowed = f"{verdict.tolerance_mm:>9.5g} mm"
-        lines.append(f"{name:<18}{_figures(verdict)}{allowed}  {'within' if verdict.passed else 'FAILED'}")
+        allowed = f"{verdict.tolerance_mm / unit_length(units):>9.5g} {UNIT_NAMES[units]}"
+        lines.append(f"{name:<18}{_figures(verdict, units)}{allowed}  {'within' if verdict.passed else 'FAILED'}")
     findings = [f"{name}: {finding}" for name, verdict in proof.files.items() for finding in verdict.findings]
     return lines + [line for finding in findings for line in wrap(finding, WIDTH, subsequent_indent="  ")]
 
 
-def _figures(verdict: FileVerdict) -> str:
+def _figures(verdict: FileVerdict, units: Units) -> str:
     if verdict.normal_mm is None or verdict.at_radius_mm is None or verdict.slope_mrad is None:
         return f"{'not measured':>36}"
-    radius, lean = f" {verdict.at_radius_mm:.2f}", f" {verdict.slope_mrad:.3f}"
-    return f"{verdict.normal_mm:>9.6f} mm{radius:>9} mm{lean:>7} mrad"
+    unit, name = unit_length(units), UNIT_NAMES[units]
+    decimals = 6 if units == "mm" else 7
+    deviation = f"{verdict.normal_mm / unit:>{decimals + 3}.{decimals}f} {name}"
+    return f"{deviation:>12}{verdict.at_radius_mm / unit:>9.2f} {name}{verdict.slope_mrad:>7.3f} mrad"
 
 
 def _mould_lines(order: Order) -> list[str]:
-    figures, name = mould_figures(order), order.job.units
+    figures, name = mould_figures(order), UNIT_NAMES[order.job.units]
     trim = "trim on the mould" if order.job.forming.trim == "on-mould" else "trim after release; the rim lies"
     rows = (
         ("depth", f"{figures.depth:.4f} {name}, vertex to rim on the mould"),
