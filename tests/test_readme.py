@@ -14,9 +14,11 @@ from pathlib import Path
 
 import pytest
 
+from fabricate.job import parse_job
 from fabricate.job_findings import allowed_values, inner_table
 from fabricate.job_keys import Job, Table
 from fabricate.job_text import toml_value
+from fabricate.order import Order
 
 README = Path(__file__).parents[1] / "README.md"
 OUTPUT_MARK = re.compile(r"<!-- output of: (?P<command>[^\n]+) -->\n(?:\n```text\n(?P<output>.*?)```\n)?", re.DOTALL)
@@ -78,7 +80,7 @@ def _renewed(text: str) -> str:
     return KEYS_MARK.sub(lambda _: f"<!-- keys of the job file -->\n{keys}\n", text)
 
 
-NUMBER = re.compile(r"\d+\.\d+")
+NUMBER = re.compile(r"\d+\.\d+|\d{4,}")
 
 
 def test_the_readme_says_what_the_tool_says_today() -> None:
@@ -94,6 +96,16 @@ def test_the_first_two_commands_are_the_ones_that_are_run_on_a_fresh_machine() -
     blocks = re.findall(r"```sh\n(.*?)```", README.read_text(encoding="utf-8"), re.DOTALL)
     assert "dishwright make" in blocks[0]
     assert all(check in blocks[1] for check in ("ruff check", "ruff format --check", "mypy", "pytest"))
+
+
+@pytest.mark.parametrize("number", [0, 1])
+def test_the_turning_tables_are_read_as_they_stand(number: int) -> None:
+    text = README.read_text(encoding="utf-8")
+    table = re.findall(r"```toml\n(.*?)```", text, re.DOTALL)[number]
+    demo = (README.parent / "fabricate" / "demo" / "terrace-heater.toml").read_text(encoding="utf-8")
+    job = parse_job(demo[: demo.index("[turning]")] + table, name="README.md")
+    assert job.turning is not None
+    assert Order(job).turning_plan.program.blocks
 
 
 @pytest.mark.parametrize("caution", ["burns and blinds", "single block", "Local codes", "is a knife"])
