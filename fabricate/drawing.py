@@ -110,8 +110,14 @@ def _centre_line(body: ArcPath) -> ArcPath:
 def _notes(chain: Chain, job: Job) -> tuple[str, ...]:
     zero = "the mould's vertex" if chain.kind == "male" else "the plane of the land"
     number = f", number {job.number}" if job.number else ""
+    rim, height = (value / unit_length(job.units) for value in chain.point_on_mould(chain.released.rim))
+    cut = "cut here" if job.forming.trim == "on-mould" else "the part is cut after release"
     return (
         f"{job.title}{number}, revision {job.revision}",
         f"{chain.kind} mould, half section; x along the spindle axis, 0 at {zero}; y = radius",
+        f"sheet: {job.sheet.material}, {job.sheet.thickness:g} {job.units}; its {job.forming.contact_face} face "
+        "lies on the mould",
+        f"mould: {job.mould.material or 'material not stated'}",
+        f"rim on the mould: radius {rim:.4f}, {height:.4f} {job.units} over the vertex; {cut}",
         f"MOULD_CURVE within {job.tolerance.files.chord_error:g} {job.units} of the exact curve, along the normal",
     )
