@@ -40,6 +40,7 @@ __all__ = [
     "removal",
     "solid",
     "speeds",
+    "spindle_proof",
     "springback",
     "starter",
     "summary",

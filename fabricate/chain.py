@@ -9,8 +9,10 @@ Distances along the normal count towards the focus. Lengths are millimetres.
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
+from typing import NoReturn
 
 import numpy as np
 
@@ -264,18 +266,20 @@ def _check_release(surface: Meridian) -> None:
     """Refuse a forming surface whose slope leaves 0 to 90 degrees: the part would lock on it."""
     low, least = surface.slope.smallest()
     high, most = surface.slope.largest()
-    if least < -1e-9 or most >= 0.5 * np.pi:
-        where = low if least < -1e-9 else high
-        radius = _turning_radius(surface) if least < -1e-9 else float(surface.radius(where))
-        raise JobError(
-            f"forming.springback: the mould is re-entrant: its slope turns at radius {radius:.6g} mm and is "
-            f"{np.degrees(least if least < -1e-9 else most):.4g} degrees at {float(surface.radius(where)):.6g} mm; "
-            "allowed: a slope from 0 up to but not 90 degrees all the way; do: check the springback stations and the "
-            "asphere, or the part locks on"
-        )
+    if least < -1e-9:
+        _refuse_release(surface, low, lambda slope: slope < -1e-9)
+    if most >= 0.5 * np.pi:
+        _refuse_release(surface, high, lambda slope: slope >= 0.5 * np.pi)
 
 
-def _turning_radius(surface: Meridian) -> float:
-    """Return the radius at which the slope first falls under 0 [mm]."""
-    where = np.linspace(surface.start, surface.end, 20001)
-    return float(surface.radius(where[int(np.argmax(surface.slope(where) < -1e-9))]))
+def _refuse_release(surface: Meridian, worst: float, locks: Callable[[np.ndarray], np.ndarray]) -> NoReturn:
+    """Say where the slope first turns out of its range, and how far it goes."""
+    where = np.append(np.linspace(surface.start, surface.end, 20001), worst)
+    turns = where[int(np.argmax(locks(surface.slope(where))))]
+    first, last = (abs(float(surface.radius(place))) for place in (turns, worst))
+    raise JobError(
+        f"forming: the mould is re-entrant: its slope turns at radius {first:.6g} mm and is "
+        f"{np.degrees(float(surface.slope(worst))):.4g} degrees at {last:.6g} mm; allowed: "
+        "a slope from 0 up to but not 90 degrees all the way; do: check springback.stations, thinning.stations and the "
+        "asphere, or the part locks on"
+    )

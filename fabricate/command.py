@@ -79,8 +79,20 @@ def _refusals(job: Path | None = None) -> Iterator[None]:
         message, head = str(error), f"{job}: "
         if job is not None and isinstance(error, JobError | GeometryError) and not message.startswith(head):
             message = head + message
+        if " mm" in message and job is not None and _in_inches(job):
+            message += " (lengths here are in mm: 1 in is 25.4 mm)"
         typer.echo(message, err=True)
         raise typer.Exit(REFUSED) from error
+
+
+def _in_inches(job: Path) -> bool:
+    """Whether a job that was understood is one in inches."""
+    from fabricate.job import read_job
+
+    try:
+        return read_job(job).units == "inch"
+    except DishwrightError:
+        return False
 
 
 def _order(path: Path) -> Order:

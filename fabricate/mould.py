@@ -181,7 +181,7 @@ def _outer_radius(tangent_radius: float, shape: job_keys.Mould) -> float:
     if outer < tangent_radius:
         raise JobError(
             f"mould.outer_diameter: value is {shape.outer_diameter:g} mm; allowed: at least "
-            f"{2.0 * tangent_radius:.6g} mm, where the edge meets the land; do: make it larger, or 0 to follow the land"
+            f"{2.0 * tangent_radius:.9g} mm, where the edge meets the land; do: make it larger, or 0 to follow the land"
         )
     if 0.5 * shape.spigot_diameter > outer:
         raise JobError(

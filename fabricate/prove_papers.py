@@ -157,16 +157,20 @@ def prove_proof(path: Path, order: Order) -> FileVerdict:
     """
     stated = _stated(path)
     others = []
-    if stated.get("passed") is not True:
-        others.append("does not say that the package has passed")
+    files = stated.get("files")
+    verdicts = files if isinstance(files, dict) else {}
+    passed = [name for name, said in verdicts.items() if isinstance(said, dict) and said.get("passed") is True]
+    if stated.get("passed") is not True or not set(order.file_names) <= set(passed) or len(passed) < len(verdicts):
+        others.append("does not say of every file and of the package that it has passed")
     if stated.get("job_sha256") != job_hash(read_text(path.with_name(JOB))):
         others.append(f"is of another {JOB} than the one that stands beside it")
     return FileVerdict(0.0, 0.0, 0.0, order.tolerance, tuple(others))
 
 
 def _stated(path: Path) -> Mapping[str, Any]:
+    text = read_text(path)
     try:
-        stated = json.loads(read_text(path))
+        stated = json.loads(text)
     except (ValueError, RecursionError) as error:
         raise FormatError(f"{path}: is not JSON: {error}; allowed: a proof; do: make the package again") from error
     if not isinstance(stated, dict):

@@ -200,7 +200,7 @@ def _left(setup: Setup, stock: Any, finished: Any) -> tuple[float, tuple[float, 
     mould, top = setup.mould, setup.stock.front + 1.0
     # Nose and flank leave a hollow at the foot of the turned outside.
     foot = setup.nose + FLANK * max(setup.turning.depth_of_cut, setup.allowance)
-    low = setup.reach + foot if setup.male else mould.lowest
+    low = setup.reach + foot if setup.male else mould.base
     wide = setup.stock.radius + 1.0 if setup.male else mould.outer_radius
     over = stock.intersection(shapely.box(mould.bore_radius, low, wide, top)).difference(finished)
     places = shapely.get_coordinates(over)

@@ -183,7 +183,7 @@ def proof_lines(proof: Proof, units: Units) -> list[str]:
     """
     lines = [f"{'file':<18}{'deviation':>12}{'at radius':>12}{'lean':>12}{'allowed':>12}"]
     for name, verdict in proof.files.items():
-        allowed = f"{verdict.tolerance_mm / unit_length(units):>9.5g} {UNIT_NAMES[units]}"
+        allowed = f" {verdict.tolerance_mm / unit_length(units):.5g}".rjust(9) + f" {UNIT_NAMES[units]}"
         lines.append(f"{name:<18}{_figures(verdict, units)}{allowed}  {'within' if verdict.passed else 'FAILED'}")
     findings = [f"{name}: {finding}" for name, verdict in proof.files.items() for finding in verdict.findings]
     return lines + [line for finding in findings for line in wrap(finding, WIDTH, subsequent_indent="  ")]
@@ -195,7 +195,8 @@ def _figures(verdict: FileVerdict, units: Units) -> str:
     unit, name = unit_length(units), UNIT_NAMES[units]
     decimals = 6 if units == "mm" else 7
     deviation = f"{verdict.normal_mm / unit:>{decimals + 3}.{decimals}f} {name}"
-    return f"{deviation:>12}{verdict.at_radius_mm / unit:>9.2f} {name}{verdict.slope_mrad:>7.3f} mrad"
+    radius, lean = f" {verdict.at_radius_mm / unit:.2f}", f" {verdict.slope_mrad:.3f}"
+    return f"{deviation:>12}{radius:>9} {name}{lean:>7} mrad"
 
 
 def _mould_lines(order: Order) -> list[str]:

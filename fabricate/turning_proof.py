@@ -20,6 +20,7 @@ from fabricate.mould import Mould
 from fabricate.passes import EDGING, FACING, FINISHING, ROUGHING, SECTIONS, TRUING
 from fabricate.removal import Finding, Removal, replay_removal
 from fabricate.speeds import Limits, limits_of, spindle_speed
+from fabricate.spindle_proof import spindle_findings
 from fabricate.turning_setup import Setup, dialect_of
 from outputs.gcode import FEED_DECIMALS
 from outputs.gcode_reader import Move, Replay, read_program
@@ -99,7 +100,8 @@ def prove_turning(text: str, job: Job, mould: Mould) -> TurningProof:
         replay = read_program(text, dialect_of(job))
     except FormatError as error:
         return TurningProof((("unreadable", str(error)),))
-    findings = [*_stop_findings(text, replay, setup), *_move_findings(text, replay, given)]
+    spindle = spindle_findings(text, given.limits, stop_after=_end_of_facing(replay))
+    findings = [*_stop_findings(text, replay, setup), *spindle, *_move_findings(text, replay, given)]
     found, measured = None, []
     try:
         found = _measured(replay, given)

@@ -116,6 +116,11 @@ def read_stl(path: Path) -> Facets:
     count = int.from_bytes(content[HEADER_SIZE:start], "little")
     if len(content) < start or len(content) != start + count * FACET.itemsize:
         raise FormatError(f"{path}: {_wrong_size(content, count)}")
+    if content.lower().startswith(b"solid"):
+        raise FormatError(
+            f'{path}: its header begins with "solid", which readers take for text; allowed: any other header; '
+            f"do: write the solid again"
+        )
     if count == 0:
         raise FormatError(f"{path}: holds no facet; allowed: 1 or more; do: write the solid again")
     facets = np.frombuffer(content, dtype=FACET, offset=start)
