@@ -152,7 +152,10 @@ class Chain:
             If the offset folds.
         """
         on_mould = self.springback.load(part)
-        return on_mould.offset(self._shift(on_mould)).scaled(self.enlargement)
+        try:
+            return on_mould.offset(self._shift(on_mould)).scaled(self.enlargement)
+        except GeometryError as error:
+            raise GeometryError(f"sheet.thickness, sheet.coating_thickness, mould.cover_thickness: {error}") from error
 
     def to_part(self, mould: Meridian) -> Meridian:
         """Return the released reflecting face that a forming surface makes.
@@ -192,8 +195,8 @@ class Chain:
             shift = _followed(better, run, breaks, max(1e-4 * moved, 1e-13 * thickness))
         if closest > NEAR_ENOUGH * thickness:
             raise GeometryError(
-                "the sheet's thickness over this mould does not settle: state it by a table (forming.thinning.law = "
-                '"stations")'
+                "the sheet's thickness over this mould does not settle; allowed: a law that does; do: state it by a "
+                'table (forming.thinning.law = "stations")'
             )
         return nearest_face
 
@@ -241,8 +244,8 @@ def rim_arc_length(face: Face, radius: float) -> float:
     """
     if radius > NEAREST_TO_CLOSING * face.widest:
         raise GeometryError(
-            f"the rim's radius is {radius:.6g} mm and the face closes at {face.widest:.6g} mm: ask for a rim under "
-            f"{NEAREST_TO_CLOSING} of that, or a longer focal length"
+            f"the rim's radius is {radius:.6g} mm and the face closes at {face.widest:.6g} mm; allowed: up to "
+            f"{NEAREST_TO_CLOSING} of that; do: ask for a smaller rim or a longer focal length"
         )
     run = arc_length_over_aperture(face, face.aperture(radius))
     return float(run(run.end))

@@ -64,7 +64,8 @@ def _file_text(path: Path) -> str:
     if path.is_dir():
         raise JobError(f"{path}: is a folder; allowed: a job file; do: name the file in it")
     try:
-        content = path.read_bytes()
+        with path.open("rb") as stream:
+            content = stream.read(_LARGEST_FILE + 1)
     except FileNotFoundError as error:
         action = "check the name; `dishwright new` writes a starter job"
         raise JobError(f"{path}: no such file; allowed: a job file; do: {action}") from error
@@ -74,7 +75,7 @@ def _file_text(path: Path) -> str:
         ) from error
     if len(content) > _LARGEST_FILE:
         raise JobError(
-            f"{path}: is {len(content)} bytes long; allowed: at most {_LARGEST_FILE}; do: check that it is a job file"
+            f"{path}: is more than {_LARGEST_FILE} bytes long; allowed: at most that; do: check that it is a job file"
         )
     try:
         return content.decode("utf-8-sig")

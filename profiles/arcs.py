@@ -129,8 +129,8 @@ def fewest_arcs(curve: Meridian, *, distance: float, slope: float = 0.0) -> ArcF
             return ArcFit(path, found, limit)
         count += 1
     raise GeometryError(
-        f"a distance of {distance:g} mm and a slope of {1e3 * slope:g} mrad need more than {MOST_ARCS} arcs: "
-        "allow a larger chord error or slope"
+        f"a distance of {distance:g} mm and a slope of {1e3 * slope:g} mrad need more than {MOST_ARCS} arcs; "
+        f"allowed: up to {MOST_ARCS}; do: allow a larger chord error or slope"
     )
 
 

@@ -73,8 +73,8 @@ def balanced_chords(curve: Meridian, *, distance: float, slope: float = 0.0) -> 
         excess = max(np.sqrt(found.normal / distance), found.slope / slope if slope > 0.0 else 0.0)
         count = max(count + 1, int(count * min(0.98 * excess, 4.0)))
     raise GeometryError(
-        f"a distance of {distance:g} mm and a slope of {1e3 * slope:g} mrad need more than {MOST_CHORDS} chords: "
-        "allow a larger chord error or slope"
+        f"a distance of {distance:g} mm and a slope of {1e3 * slope:g} mrad need more than {MOST_CHORDS} chords; "
+        f"allowed: up to {MOST_CHORDS}; do: allow a larger chord error or slope"
     )
 
 

@@ -225,10 +225,11 @@ def _lipschitz(curve: Meridian, path: ArcPath) -> Deviation:
     """Bound the distance both ways by samples and half their spacing; the lean by the coarsest comparison."""
     where = np.linspace(curve.start, curve.end, SAMPLES)
     on_curve = curve.points(where)
-    on_path = _spread(path, SAMPLES)
+    count = SAMPLES + 2 * len(path)
+    on_path = _spread(path, count)
     there = _distances(on_curve, on_path)
     back = _distances(on_path, on_curve)
-    spacing = (curve.end - curve.start) / (SAMPLES - 1) + float(path.lengths.sum()) / (SAMPLES - len(path) - 1)
+    spacing = (curve.end - curve.start) / (SAMPLES - 1) + float(path.lengths.sum()) / (count - len(path) - 1)
     worst = int(np.argmax(there))
     return Deviation(
         max(float(there.max()), float(back.max())) + spacing, float(curve.radius(where[worst])), np.pi, 0.0
@@ -248,8 +249,6 @@ def _spread(path: ArcPath, count: int) -> Array:
 
 def _distances(points: Array, others: Array) -> Array:
     """Return each point's distance to the nearest of the others."""
-    nearest = np.empty(len(points))
-    for first in range(0, len(points), 500):
-        block = points[first : first + 500, None, :] - others[None, :, :]
-        nearest[first : first + 500] = np.sqrt((block**2).sum(axis=2).min(axis=1))
-    return nearest
+    from scipy.spatial import cKDTree
+
+    return np.asarray(cKDTree(others).query(points)[0])

@@ -90,8 +90,8 @@ class Face:
         if (inside <= 0.0).any():
             raise GeometryError(
                 f"a conic with conic constant {self.conic_constant:g} and focal length {self.focal_length:g} mm "
-                f"ends at radius {self.widest:g} mm and has no point at {np.max(radius):g} mm: "
-                "ask for a smaller rim and trim, a longer focal length or a smaller conic constant"
+                f"ends at radius {self.widest:g} mm and has no point at {np.max(radius):g} mm; allowed: radii on the "
+                "conic; do: ask for a smaller rim and trim, a longer focal length or a smaller conic constant"
             )
         return np.asarray(np.sqrt(inside))
 

@@ -68,7 +68,7 @@ class Meridian:
         if float(run(run.end)) < length:
             raise GeometryError(
                 f"the face ends {float(run(run.end)):.6g} mm along its meridian, before the {length:.6g} mm that "
-                "rim and trim need: ask for a smaller rim or trim, or a longer focal length"
+                "rim and trim need; allowed: a rim and trim on the face; do: ask for less, or a longer focal length"
             )
 
         def values(aperture: Array) -> Array:
@@ -264,9 +264,10 @@ class Meridian:
         if least <= 1e-9:
             radius = abs(float(self.radius(where)))
             raise GeometryError(
-                f"an offset of {abs(float(shift(where))):.6g} mm at radius {radius:.6g} mm is not "
-                f"smaller than the radius of curvature there, {1.0 / abs(float(self.curvature(where))):.6g} mm, "
-                "and folds the curve: use a thinner sheet or cover, or put the other face on the mould"
+                f"an offset of {abs(float(shift(where))):.6g} mm at radius {radius:.6g} mm folds the curve: it is not "
+                f"smaller than the radius of curvature there; allowed: less than "
+                f"{1.0 / abs(float(self.curvature(where))):.6g} mm; do: use a thinner sheet or cover, or put the other "
+                "face on the mould"
             )
 
     @property

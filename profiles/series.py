@@ -255,8 +255,8 @@ def resolve(function: Callable[[Array], Array], breaks: ArrayLike, *, sizes: Arr
         middle = 0.5 * (start + end)
         if end - start < least or len(pieces) + len(waiting) > MOST_PIECES:
             raise GeometryError(
-                f"the curve is not smooth near {middle:.6g} mm along it, so it can't be followed exactly: "
-                "ask for a gentler face, springback table or thickness table"
+                f"the curve is not smooth near {middle:.6g} mm along it, so it can't be followed exactly; allowed: a "
+                "smooth one; do: ask for a gentler face, springback table or thickness table"
             )
         waiting += [(middle, end), (start, middle)]
     return tuple(

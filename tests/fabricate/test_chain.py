@@ -154,7 +154,10 @@ def test_the_rim_is_cut_where_its_material_lies() -> None:
 def test_a_sheet_too_thick_for_the_curve_folds() -> None:
     job = _job(faces=("convex", "concave"), reflector="focal_length = 5.0\nrim_diameter = 12.0", more="").model_copy()
     thick = job.model_copy(update={"sheet": job.sheet.model_copy(update={"thickness": 10.5})})
-    with pytest.raises(GeometryError, match=r"an offset of 10\.52 mm at radius \S+ mm is not smaller than the radius"):
+    with pytest.raises(
+        GeometryError,
+        match=r"an offset of 10\.52 mm at radius \S+ mm folds the curve: it is not smaller than the radius",
+    ):
         _ = Chain(thick).mould
 
 

@@ -66,7 +66,9 @@ def test_a_circle_is_one_arc_and_a_straight_line_one_line() -> None:
 
 def test_more_than_four_hundred_arcs_are_refused() -> None:
     (curvature,) = resolve(lambda where: (0.1 * np.sin(where))[None], np.linspace(0.0, 300.0, 40), sizes=[0.1])
-    with pytest.raises(GeometryError, match="more than 400 arcs: allow a larger chord error or slope"):
+    with pytest.raises(
+        GeometryError, match="more than 400 arcs; allowed: up to 400; do: allow a larger chord error or slope"
+    ):
         fewest_arcs(Meridian.of_curvature(curvature), distance=1e-7)
 
 
