@@ -75,7 +75,8 @@ def _file_text(path: Path) -> str:
         ) from error
     if len(content) > _LARGEST_FILE:
         raise JobError(
-            f"{path}: is more than {_LARGEST_FILE} bytes long; allowed: at most that; do: check that it is a job file"
+            f"{path}: is over {_LARGEST_FILE} bytes long; allowed: at most {_LARGEST_FILE}; "
+            "do: check that it is a job file"
         )
     try:
         return content.decode("utf-8-sig")

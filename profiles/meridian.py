@@ -245,11 +245,11 @@ class Meridian:
 
         def values(where: Array) -> Array:
             radius, height, slope = self._values(where)
-            there = slope - np.arcsin(change(where))
+            there = slope - np.arcsin(np.clip(change(where), -1.0, 1.0))
             return np.stack([radius + distance(where) * np.sin(there), height - distance(where) * np.cos(there), there])
 
         def speed(where: Array) -> Array:
-            lean = np.sqrt(1.0 - change(where) ** 2)
+            lean = np.sqrt(np.maximum(1.0 - change(where) ** 2, 1e-12))
             return np.asarray(lean + distance(where) * (self.curvature(where) - turn(where) / lean))
 
         (rate,) = resolve(lambda where: speed(where)[None], breaks, sizes=[1.0])

@@ -280,7 +280,7 @@ def test_a_file_that_is_not_utf8_is_refused_with_its_line(tmp_path: Path) -> Non
 def test_a_huge_file_is_refused(tmp_path: Path) -> None:
     path = tmp_path / "job.toml"
     path.write_bytes(b"#" * 1_000_001)
-    with pytest.raises(JobError, match="is 1000001 bytes long; allowed: at most 1000000"):
+    with pytest.raises(JobError, match="is over 1000000 bytes long; allowed: at most 1000000"):
         read_job(path)
 
 

@@ -2,7 +2,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from fabricate.chain import rim_arc_length
@@ -35,6 +35,7 @@ def test_the_number_of_arcs_is_at_the_limit(f_over_d: float, offset: float, tole
     assert fit.path.vertices[0, 0] == 0.0
 
 
+@settings(max_examples=25)
 @given(st.from_type(Meridian), st.floats(1e-5, 1e-3), st.sampled_from([0.0, 2e-3]))
 def test_arcs_keep_both_tolerances(curve: Meridian, share: float, slope: float) -> None:
     fit = fewest_arcs(curve, distance=share * curve.end, slope=slope)
@@ -79,6 +80,7 @@ def test_more_arcs_come_closer() -> None:
     assert len(tangent_arcs(curve, 3)) == 3
 
 
+@settings(max_examples=25)
 @given(st.from_type(Meridian), st.floats(1e-5, 1e-3))
 def test_chords_keep_the_distance_with_about_as_many_as_theory_says(curve: Meridian, share: float) -> None:
     path = balanced_chords(curve, distance=share * curve.end)

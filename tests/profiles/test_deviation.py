@@ -4,7 +4,7 @@ from itertools import pairwise
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from profiles.arcpath import ArcPath
@@ -43,6 +43,7 @@ def _along_normals(curve: Meridian, path: ArcPath) -> float:
     return largest
 
 
+@settings(max_examples=20)
 @given(st.from_type(Meridian), st.integers(1, 6), st.floats(-1e-3, 1e-3), st.data())
 def test_it_is_never_less_than_sampling_finds(curve: Meridian, count: int, shift: float, data: st.DataObject) -> None:
     path = tangent_arcs(curve, count) if data.draw(st.booleans()) else chords(curve, 4 * count)
@@ -52,6 +53,7 @@ def test_it_is_never_less_than_sampling_finds(curve: Meridian, count: int, shift
     assert found >= _sampled(curve, moved)
 
 
+@settings(max_examples=20)
 @given(st.from_type(Meridian), st.integers(2, 6))
 def test_it_is_no_looser_than_the_curve_needs(curve: Meridian, count: int) -> None:
     path = tangent_arcs(curve, count)
