@@ -34,6 +34,12 @@ MARGIN = 0.995
 EASE = 0.97
 """Part of the spread that the forming surface's last strip may use, for the edge shares its ring."""
 
+SHARP = 0.05
+"""Angle [rad] from which on two surfaces meet in a sharp corner."""
+
+CORNER_SHARE = 0.15
+"""Part of its spread that a surface takes beside a sharp corner with the forming surface."""
+
 MOST_TRIANGLES = 4_000_000
 ROUNDS = 10
 
@@ -119,7 +125,7 @@ def revolve(solid: Solid, *, chord_error: float, facets: Facets = "balanced") ->
     """
     surfaces, room = _told_apart(solid, chord_error)
     _check_number(triangle_limit(solid.curve, chord_error=room, facets=facets), chord_error)
-    forming, ease, body = 1.0, EASE, np.ones(len(surfaces) - 1)
+    forming, ease, body = 1.0, EASE, _shares_at_corners(surfaces)
     for _ in range(ROUNDS):
         chain = chain_rings(
             surfaces,
@@ -139,6 +145,22 @@ def revolve(solid: Solid, *, chord_error: float, facets: Facets = "balanced") ->
         f"no mesh was found that keeps a chord error of {chord_error:g} mm on this half section; allowed: stretches "
         "that are long against the chord error; do: allow a larger chord error, or change the smallest radius or land"
     )
+
+
+def _shares_at_corners(surfaces: tuple[TurnedCurve, *tuple[TurnedArc, ...]]) -> Array:
+    """Return what part of its spread each stretch of the rest may take, shape (k,).
+
+    Beside a sharp corner with the forming surface, at a bore or an edge without a radius, a chord of the shared ring
+    strays from both surfaces at once: there the rest leaves nearly all of the deviation to the forming surface.
+    """
+    curve, rest = surfaces[0].curve, surfaces[1:]
+    ends = curve.normals(np.array([curve.end, curve.start]))
+    shares = np.ones(len(rest))
+    for index, meeting, own in ((0, rest[0].normals[0], ends[0]), (-1, rest[-1].normals[1], ends[1])):
+        on_axis = index == -1 and curve.on_axis
+        if not on_axis and float(meeting @ own) < np.cos(SHARP):
+            shares[index] = CORNER_SHARE
+    return shares
 
 
 def _told_apart(solid: Solid, chord_error: float) -> tuple[tuple[TurnedCurve, *tuple[TurnedArc, ...]], float]:
