@@ -36,8 +36,3 @@ def test_no_point_of_the_mesh_is_farther_from_the_solid_than_allowed(mould: str,
         shapely.points(np.hypot(points[:, 0], points[:, 1]), points[:, 2]), shapely.LineString(section)
     )
     assert away.max() <= 0.02
-
-
-def test_the_base_is_the_plane_of_height_0() -> None:
-    order = Order(parse_job(DEMO, name="solid.toml"))
-    assert order.mesh.vertices[:, 2].min() == 0.0
