@@ -264,6 +264,9 @@ def _mesh(solid: Solid, chain: Chain, points: Array, chord_error: float) -> Mesh
     strips = chain.rings.strips()
     triangles = np.concatenate(strips)
     _check_number(len(triangles), chord_error)
+    # What rounding alone sets off a plane or the axis lies on it: a thousandth of what single precision tells apart.
+    nothing = 1e-3 * float(np.spacing(np.float32(solid.size)))
+    points = np.where(np.abs(points) < nothing, 0.0, points)
     vertices = chain.rings.vertices(points).astype(np.float32).astype(np.float64) + 0.0
     forming = sum(len(strip) for strip, owner in zip(strips, chain.owners.tolist(), strict=True) if owner == 0)
     mesh = Mesh(vertices, triangles, forming)

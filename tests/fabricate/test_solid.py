@@ -32,7 +32,13 @@ def test_no_point_of_the_mesh_is_farther_from_the_solid_than_allowed(mould: str,
     curve, rest = order.exact_solid.curve, order.exact_solid.rest
     section = np.vstack([curve.points(np.linspace(curve.start, curve.end, 20001)), rest.points(sagitta=1e-5)[1:]])
     points = np.einsum("kw,nwd->nkd", SHARES, order.mesh.corners).reshape(-1, 3)
-    away = shapely.distance(
-        shapely.points(np.hypot(points[:, 0], points[:, 1]), points[:, 2]), shapely.LineString(section)
-    )
+    stretches = shapely.STRtree(shapely.linestrings(np.stack([section[:-1], section[1:]], axis=1)))
+    places = shapely.points(np.hypot(points[:, 0], points[:, 1]), points[:, 2])
+    _, away = stretches.query_nearest(places, return_distance=True, all_matches=False)
+    assert len(away) == len(places)
     assert away.max() <= 0.02
+
+
+def test_the_base_is_the_plane_of_height_0() -> None:
+    order = Order(parse_job(DEMO, name="solid.toml"))
+    assert order.mesh.vertices[:, 2].min() == 0.0
