@@ -13,7 +13,7 @@ from typing import Any
 from fabricate.gauges import GAUGE_SYSTEMS, gauge_thickness
 from fabricate.job_facts import Facts, UnknownFactError, found
 from fabricate.job_findings import Finding, inner_table, shown
-from fabricate.job_keys import Table, measure_of
+from fabricate.job_table import Table, measure_of
 from fabricate.materials import has_material
 from fabricate.measures import MM_PER_INCH, Units
 from profiles.errors import JobError

@@ -13,7 +13,8 @@ from difflib import get_close_matches
 from functools import cache
 from typing import Any, get_args
 
-from fabricate.job_keys import Job, Table, measure_of
+from fabricate.job_keys import Job
+from fabricate.job_table import Table, measure_of
 from fabricate.measures import Units
 
 Place = tuple[int | str, ...]

@@ -7,8 +7,10 @@ import json
 from collections.abc import Iterator
 from typing import Any
 
-from fabricate.job_keys import Job, Springback, Table
+from fabricate.forming_keys import Springback
+from fabricate.job_keys import Job
 from fabricate.job_rules import SPRINGBACK_OPTIONS
+from fabricate.job_table import Table
 
 _OPTIONS = frozenset(key for keys in SPRINGBACK_OPTIONS.values() for key in keys)
 

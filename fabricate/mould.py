@@ -14,7 +14,7 @@ from typing import Literal
 
 import numpy as np
 
-from fabricate import job_keys
+from fabricate import mould_keys
 from profiles.arcpath import ArcPath
 from profiles.errors import JobError
 from profiles.meridian import Meridian
@@ -105,7 +105,7 @@ class Mould:
         return ArcPath(vertices, np.concatenate([forming.bulges, rest.bulges]))
 
 
-def mould_around(curve: Meridian, kind: Kind, shape: job_keys.Mould) -> Mould:
+def mould_around(curve: Meridian, kind: Kind, shape: mould_keys.Mould) -> Mould:
     """Return the mould that a forming surface and the ``[mould]`` table describe.
 
     Parameters
@@ -114,7 +114,7 @@ def mould_around(curve: Meridian, kind: Kind, shape: job_keys.Mould) -> Mould:
         The forming surface from the axis to its end, in the mould frame [mm].
     kind : {"male", "female"}
         Which face of the sheet it carries.
-    shape : job_keys.Mould
+    shape : mould_keys.Mould
         The table, in millimetres.
 
     Returns
@@ -157,7 +157,7 @@ def mould_around(curve: Meridian, kind: Kind, shape: job_keys.Mould) -> Mould:
     )
 
 
-def _check_bore(bore: float, end: float, shape: job_keys.Mould) -> None:
+def _check_bore(bore: float, end: float, shape: mould_keys.Mould) -> None:
     if bore >= end:
         raise JobError(
             f"mould.bore_diameter: value is {2.0 * bore:g} mm; allowed: less than the forming surface's end, "
@@ -176,7 +176,7 @@ def _check_bore(bore: float, end: float, shape: job_keys.Mould) -> None:
         )
 
 
-def _outer_radius(tangent_radius: float, shape: job_keys.Mould) -> float:
+def _outer_radius(tangent_radius: float, shape: mould_keys.Mould) -> float:
     outer = 0.5 * shape.outer_diameter if shape.outer_diameter else tangent_radius + shape.land_width
     if outer < tangent_radius:
         raise JobError(
@@ -202,7 +202,7 @@ def _rim(end: np.ndarray, slope: float, sign: float, land: tuple[float, float, f
     return ArcPath(np.array(vertices), np.array(bulges)) if bulges else None
 
 
-def _back(outer: float, land: float, base: float, start: tuple[float, float], shape: job_keys.Mould) -> ArcPath:
+def _back(outer: float, land: float, base: float, start: tuple[float, float], shape: mould_keys.Mould) -> ArcPath:
     """Return outer side, base, spigot and bore or axis in the lathe frame; ``start`` is the forming surface's start."""
     bore, spigot, lowest = start[0], 0.5 * shape.spigot_diameter, base - shape.spigot_length
     vertices = [(outer, land), (outer, base)]

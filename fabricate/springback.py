@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fabricate.bending import BendingSheet, bent_after, bent_before, elastic_curvature
-from fabricate.job_keys import Springback
+from fabricate.forming_keys import Springback
 from profiles.errors import GeometryError, JobError
 from profiles.face import Face
 from profiles.meridian import Meridian

@@ -13,8 +13,9 @@ from textwrap import wrap
 from typing import Literal
 
 from fabricate.job_findings import all_keys, allowed_values, inner_table, shown
-from fabricate.job_keys import Job, Table, measure_of
+from fabricate.job_keys import Job
 from fabricate.job_rules import SPRINGBACK_KEYS, SPRINGBACK_OPTIONS, THINNING_KEYS
+from fabricate.job_table import Table, measure_of
 from fabricate.job_text import toml_value
 from fabricate.materials import has_material, material
 from fabricate.measures import Units
@@ -195,6 +196,30 @@ def _line(starter: Starter, table: type[Table], path: str, name: str) -> _Line:
     return _Line(key, state, text + (_MARK if state == "to be stated" else ""), comment)
 
 
+def _may_be_added(starter: Starter) -> Iterator[str]:
+    """Yield the optional tables that are not laid out, each with its meaning."""
+    left = [
+        (path, description)
+        for path, description in _optional_tables(Job, "")
+        if path != "turning" and not starter.lays_out(path)
+    ]
+    if left:
+        yield from ("", "# Tables that may be added; `dishwright new --set TABLE.KEY=VALUE` lays them out:")
+        yield from (f"# [{path}]  {description}" for path, description in left)
+
+
+def _optional_tables(table: type[Table], path: str) -> Iterator[tuple[str, str]]:
+    for name, field in table.model_fields.items():
+        inner = inner_table(table, name)
+        if inner is None:
+            continue
+        inside = f"{path}.{name}".lstrip(".")
+        if not field.is_required() and field.default is None:
+            yield inside, field.description or ""
+        else:
+            yield from _optional_tables(inner, inside)
+
+
 def _follows_units(table: type[Table], name: str) -> bool:
     measure = measure_of(table, name)
     return measure is not None and measure.unit("mm") != measure.unit("inch")
@@ -240,6 +265,7 @@ def starter_text(given: Mapping[str, JobValue], *, tables: Collection[str] = ())
                 ("", *(f"# {line}" for line in wrap(entry.comment, _WIDTH, break_on_hyphens=False)), entry.text)
             )
     lines.extend(() if starter.lays_out("turning") else _NO_TURNING)
+    lines.extend(_may_be_added(starter))
     return "\n".join(lines) + "\n"
 
 

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from fabricate.job_keys import Thinning
+from fabricate.forming_keys import Thinning
 from fabricate.springback import arc_lengths_at, table_over_radius
 from profiles.errors import JobError
 from profiles.meridian import Meridian

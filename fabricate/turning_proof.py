@@ -15,12 +15,13 @@ from functools import lru_cache
 import numpy as np
 
 from fabricate.contour import nose_curve
-from fabricate.job_keys import Job, Turning
+from fabricate.job_keys import Job
 from fabricate.mould import Mould
 from fabricate.passes import EDGING, FACING, FINISHING, ROUGHING, SECTIONS, TRUING
 from fabricate.removal import Finding, Removal, replay_removal
 from fabricate.speeds import Limits, limits_of, spindle_speed
 from fabricate.spindle_proof import spindle_findings
+from fabricate.turning_keys import Turning
 from fabricate.turning_setup import Setup, dialect_of
 from outputs.gcode import FEED_DECIMALS
 from outputs.gcode_reader import Move, Replay, read_program

@@ -16,9 +16,10 @@ from functools import cached_property
 
 import numpy as np
 
-from fabricate.job_keys import Job, Turning
+from fabricate.job_keys import Job
 from fabricate.measures import Units
 from fabricate.mould import Mould
+from fabricate.turning_keys import Turning
 from outputs.gcode_words import Dialect
 from profiles.arcpath import ArcPath
 from profiles.errors import JobError

@@ -16,7 +16,8 @@ import pytest
 
 from fabricate.job import parse_job
 from fabricate.job_findings import allowed_values, inner_table
-from fabricate.job_keys import Job, Table
+from fabricate.job_keys import Job
+from fabricate.job_table import Table
 from fabricate.job_text import toml_value
 from fabricate.order import Order
 

@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 
 from fabricate.job import Job, job_hash, job_text, parse_job, questions, read_job
 from fabricate.job_derive import focal_length_of
-from fabricate.job_keys import Table
+from fabricate.job_table import Table
 from profiles.errors import JobError
 from profiles.face import Face
 

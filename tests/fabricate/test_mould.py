@@ -7,8 +7,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from fabricate.job_keys import Mould as Shape
 from fabricate.mould import Mould, mould_around
+from fabricate.mould_keys import Mould as Shape
 from fabricate.solid import mould_solid
 from profiles.arcs import tangent_arcs
 from profiles.errors import JobError

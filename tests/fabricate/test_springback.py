@@ -6,7 +6,7 @@ from numpy.testing import assert_allclose
 
 from fabricate.bending import BendingSheet
 from fabricate.chain import rim_arc_length
-from fabricate.job_keys import Springback
+from fabricate.forming_keys import Springback
 from fabricate.springback import (
     ReleasedFace,
     StatedSpringback,

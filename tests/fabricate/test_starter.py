@@ -42,6 +42,16 @@ TURNED: dict[str, JobValue] = {
     "turning.control.decimals": 4,
 }
 
+OPTIONAL = (
+    "sheet.properties",
+    "mould.lead_out",
+    "mould.hub",
+    "mould.air_holes",
+    "mould.bolts",
+    "follow_block",
+    "turning",
+)
+
 
 def without(given: dict[str, JobValue], *keys: str) -> dict[str, JobValue]:
     return {key: value for key, value in given.items() if key not in keys}
@@ -126,7 +136,7 @@ def test_defaults_of_an_inch_job_are_inches() -> None:
 
 @pytest.mark.parametrize("units", ["mm", "inch"])
 def test_every_key_stands_there_with_its_meaning_and_what_is_allowed(units: str) -> None:
-    text = starter_text({"units": units}, tables=("turning", "sheet.properties"))
+    text = starter_text({"units": units}, tables=OPTIONAL)
     names = [key.rpartition(".")[2] for key in all_keys()]
     comments = re.findall(r"^# (\w+): .+?\.(?: |\n# )Allowed: .+?\.\n(?:# )?\1 =", text, re.MULTILINE | re.DOTALL)
     assert comments == names
@@ -153,3 +163,11 @@ def test_a_mistyped_key_is_refused_with_the_nearest() -> None:
         JobError, match=r"reflector\.focal: unknown key, its value is 3; allowed: reflector\.focal_length"
     ):
         starter_text({"reflector.focal": 3})
+
+
+def test_tables_that_may_be_added_are_named_until_a_key_opens_them() -> None:
+    assert "# [mould.hub]  flat pad at the centre" in starter_text(SPUN)
+    opened = starter_text(SPUN | {"mould.hub.diameter": 30.0})
+    assert "[mould.hub]\n" in opened
+    assert "# [mould.hub]" not in opened
+    assert "# [mould.bolts]" in opened

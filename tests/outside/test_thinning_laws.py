@@ -15,7 +15,7 @@ import numpy as np
 import pytest
 from numpy.testing import assert_allclose
 
-from fabricate.job_keys import Thinning
+from fabricate.forming_keys import Thinning
 from fabricate.thinning import FormedSheet, sine_law, straight_vacuum
 from profiles.face import Face
 from profiles.meridian import Meridian
