@@ -17,19 +17,17 @@ from typing import NoReturn
 import numpy as np
 
 from fabricate.bending import BendingSheet
+from fabricate.curvature_map import CurvatureMap, ReleasedFace
 from fabricate.job_keys import Job
-from fabricate.mould import Kind, Mould, mould_around
-from fabricate.springback import CurvatureMap, ReleasedFace, StatedSpringback, springback_map
+from fabricate.mould import Kind, Mould, mould_around, with_trim_line
+from fabricate.springback import StatedSpringback, springback_map
 from fabricate.thinning import FormedSheet, thickness_on_mould
 from profiles.errors import GeometryError, JobError
 from profiles.face import Face
 from profiles.meridian import Meridian, arc_length_over_aperture
-from profiles.series import Series, merged_breaks, resolve
+from profiles.offset_source import offset_source
+from profiles.series import Series
 
-ROUNDS = 20
-SETTLED = 1e-11
-NEAR_ENOUGH = 1e-6
-SAMPLES = 201
 NEAREST_TO_CLOSING = 0.9999
 
 
@@ -58,16 +56,18 @@ class Chain:
         rim = rim_arc_length(face, 0.5 * reflector.rim_diameter)
         return ReleasedFace(face, Meridian.of_face(face, rim + self.job.forming.trim_allowance), rim)
 
+    @property
+    def stated_springback(self) -> StatedSpringback:
+        """What the law of springback is made from."""
+        sheet, row = self.job.sheet, self.job.sheet.row
+        mirror_side = 1 if self.job.reflector.reflecting_face == "concave" else -1
+        bending = BendingSheet(sheet.thickness, row.youngs_modulus_mpa, row.poisson, mirror_side)
+        return StatedSpringback(self.released, self.job.forming.springback, bending)
+
     @cached_property
     def springback(self) -> CurvatureMap:
         """What the reflecting face's curvature does on release."""
-        return springback_map(StatedSpringback(self.released, self.job.forming.springback, self._bending_sheet))
-
-    @property
-    def _bending_sheet(self) -> BendingSheet:
-        row = self.job.sheet.row
-        mirror_side = 1 if self.job.reflector.reflecting_face == "concave" else -1
-        return BendingSheet(self.job.sheet.thickness, row.youngs_modulus_mpa, row.poisson, mirror_side)
+        return springback_map(self.stated_springback)
 
     @cached_property
     def on_mould(self) -> Meridian:
@@ -108,7 +108,9 @@ class Chain:
             If the part would lock on the mould, or the mould's body does not fit.
         """
         _check_release(self.forming_surface)
-        return mould_around(self.forming_surface, self.kind, self.job.mould)
+        mould = mould_around(self.forming_surface, self.kind, self.job.mould)
+        depth = self.job.mould.trim_line_depth
+        return with_trim_line(mould, self.point_on_mould(self.released.rim)[0], depth) if depth else mould
 
     @property
     def vertex_gap(self) -> float:
@@ -176,29 +178,7 @@ class Chain:
             If the thickness does not settle, or the offset folds.
         """
         contact = mould.scaled(1.0 / self.enlargement)
-        return _on_its_vertex(self.springback.release(self._reflecting_face_over(contact)))
-
-    def _reflecting_face_over(self, contact: Meridian) -> Meridian:
-        """Return the reflecting face over a forming surface: its own offset, as thick as it makes the sheet itself."""
-        thickness = self.job.sheet.thickness
-        everywhere = np.linspace(contact.start, contact.end, SAMPLES)
-        shift, closest, nearest_face = self._shift(contact), np.inf, contact
-        for _ in range(ROUNDS):
-            face, run = contact.offset_source(shift)
-            better = self._shift(face)
-            moved = float(np.abs(better(run(everywhere)) - shift(everywhere)).max())
-            if moved < closest:
-                closest, nearest_face = moved, face
-            if moved < SETTLED * thickness or moved > 1e3 * closest:
-                break
-            breaks = merged_breaks(contact.breaks, run.solve(better.breaks), start=contact.start, end=contact.end)
-            shift = _followed(better, run, breaks, max(1e-4 * moved, 1e-13 * thickness))
-        if closest > NEAR_ENOUGH * thickness:
-            raise GeometryError(
-                "the sheet's thickness over this mould does not settle; allowed: a law that does; do: state it by a "
-                'table (forming.thinning.law = "stations")'
-            )
-        return nearest_face
+        return _on_its_vertex(self.springback.release(offset_source(contact, self._shift)))
 
     def _thickness(self, on_mould: Meridian) -> Series:
         sheet = FormedSheet(on_mould, self.released.meridian, self.job.sheet.thickness)
@@ -253,16 +233,6 @@ def rim_arc_length(face: Face, radius: float) -> float:
 
 def _on_its_vertex(curve: Meridian) -> Meridian:
     return curve.raised(-float(curve.height(curve.start)))
-
-
-def _followed(shift: Series, run: Series, breaks: np.ndarray, noise: float) -> Series:
-    """Return a distance along the reflecting face over the arc length of the forming surface [mm].
-
-    Each round of the search takes a derivative, which would blow up what is not known yet: coefficients that are small
-    against the last change are left out.
-    """
-    (followed,) = resolve(lambda where: shift(run(where))[None], breaks, sizes=[10.0 * shift.size])
-    return Series(tuple(piece.trim(noise) for piece in followed.pieces))
 
 
 def _check_release(surface: Meridian) -> None:

@@ -123,10 +123,22 @@ def make(
         bool,
         typer.Option("--replace", help="Put it in the place of another package, which is kept as FOLDER.previous."),
     ] = False,
+    from_mould: Annotated[
+        Path | None,
+        typer.Option(
+            "--from-mould",
+            metavar="DRAWING.dxf|READINGS.csv",
+            help="Write nothing: say what part the job's sheet becomes on this existing mould.",
+        ),
+    ] = None,
     as_json: AsJson = False,
 ) -> None:
     """Make the work package of a job: write it, read it back, prove it, and put it in its place."""
     source = job or DEMO
+    if from_mould is not None:
+        unused = [name for name, given in (("--output", output is not None), ("--replace", replace)) if given]
+        _say_what_a_mould_makes(source, from_mould, unused, as_json=as_json)
+        return
     with _refusals(source):
         from fabricate.make import ProofFailedError, make_package
         from fabricate.summary import proof_lines, summary_json, summary_text
@@ -145,6 +157,28 @@ def make(
             _print_json(summary_json(order, made))
         else:
             typer.echo(summary_text(order, made), nl=False)
+
+
+def _say_what_a_mould_makes(job: Path, mould: Path, unused: list[str], *, as_json: bool) -> None:
+    with _refusals():
+        if unused:
+            raise JobError(
+                f"{' and '.join(unused)}: given beside --from-mould, which writes no package; allowed: --json beside "
+                "it; do: leave one of them out"
+            )
+    with _refusals(job):
+        from textwrap import wrap
+
+        from fabricate.from_mould import part_of_mould, words
+        from fabricate.job import read_job
+
+        understood = read_job(job)
+        found = part_of_mould(understood, mould)
+        if as_json:
+            _print_json({"units": understood.units, **found.as_json(understood.units)})
+        else:
+            wrapped = (line for text in words(found, understood) for line in wrap(text, 100, subsequent_indent="  "))
+            typer.echo("\n".join(wrapped))
 
 
 @app.command()
@@ -216,7 +250,7 @@ def new(  # noqa: PLR0913 - each option is a parameter
     material: Annotated[str | None, typer.Option(help="Of the sheet; see `dishwright materials`.")] = None,
     thickness: Annotated[str | None, typer.Option(help="Of the sheet.")] = None,
     gauge: Annotated[str | None, typer.Option(help="Of the sheet, with its system, instead of the thickness.")] = None,
-    gauge_system: Annotated[str | None, typer.Option(help="AWG, SWG, USG or MSG.")] = None,
+    gauge_system: Annotated[str | None, typer.Option(help="AWG, SWG, USG, MSG or, for copper, oz/ft2.")] = None,
     process: Annotated[
         str | None, typer.Option(help="spinning, shear-spinning, drape-forming or straight-vacuum.")
     ] = None,

@@ -9,8 +9,10 @@ from __future__ import annotations
 import numpy as np
 
 from fabricate.chain import Chain
+from fabricate.holes import drilling_outlines, drilling_words
 from fabricate.job_keys import Job
 from fabricate.measures import MM_PER_INCH, Units
+from fabricate.mould_features import feature_words
 from outputs.dxf import Drawing
 from profiles.arcpath import ArcPath
 from profiles.arcs import fewest_arcs
@@ -20,6 +22,8 @@ MOULD_CURVE = "MOULD_CURVE"
 MOULD_BODY = "MOULD_BODY"
 CENTRE_LINE = "CENTRE_LINE"
 REFLECTING_FACE = "REFLECTING_FACE"
+DRILLING = "DRILLING"
+TRIM_LINE = "TRIM_LINE"
 
 ROUNDING = {"mm": 2e-8, "inch": 5e-7}
 """What the written digits of a drawing may add to a deviation [mm]."""
@@ -56,14 +60,30 @@ def lathe_drawing(chain: Chain, forming: ArcPath, job: Job) -> Drawing:
     layers = {
         MOULD_CURVE: curve,
         MOULD_BODY: body,
-        CENTRE_LINE: _centre_line(body),
+        CENTRE_LINE: centre_line(body),
         REFLECTING_FACE: mould.to_lathe(fewest_arcs(face, distance=distance).path),
     }
-    return Drawing(
-        job.units,
-        {name: (to_drawing(path, job.units),) for name, path in layers.items()},
-        _notes(chain, job),
-    )
+    if mould.trim_line is not None:
+        layers[TRIM_LINE] = mould.trim_line.path
+    drawn = {name: (to_drawing(path, job.units),) for name, path in layers.items()}
+    holes = tuple(to_drawing(path, job.units) for path in drilling_outlines(chain))
+    return Drawing(job.units, drawn | ({DRILLING: holes} if holes else {}), (*_notes(chain, job), *drilling_notes(job)))
+
+
+def drilling_notes(job: Job) -> tuple[str, ...]:
+    """Return what a drawing says of the holes that are drilled into a mould.
+
+    Parameters
+    ----------
+    job : Job
+        The job in its own units.
+
+    Returns
+    -------
+    tuple of str
+        One line for each kind of hole; none without holes.
+    """
+    return tuple(f"{DRILLING}: {words}; drilled after turning" for words in drilling_words(job))
 
 
 def fit_distance(tolerance: float, units: Units) -> float:
@@ -92,6 +112,12 @@ def reflecting_face_on_mould(chain: Chain) -> Meridian:
     return face.part(start, chain.released.rim).raised(chain.vertex_gap)
 
 
+def centre_line(body: ArcPath) -> ArcPath:
+    """Return the axis beside a half section in the lathe frame, a little longer than it at both ends [mm]."""
+    low, high = body.vertices[:, 1].min() - OVERHANG, body.vertices[:, 1].max() + OVERHANG
+    return ArcPath(np.array([[0.0, low], [0.0, high]]), np.zeros(1))
+
+
 def to_drawing(path: ArcPath, units: Units) -> ArcPath:
     """Return a path of the lathe frame [mm] in drawing coordinates and the job's unit."""
     return path.swapped().scaled(1.0 / unit_length(units))
@@ -100,11 +126,6 @@ def to_drawing(path: ArcPath, units: Units) -> ArcPath:
 def from_drawing(path: ArcPath, units: Units) -> ArcPath:
     """Return a path of a drawing in the lathe frame [mm]."""
     return path.scaled(unit_length(units)).swapped()
-
-
-def _centre_line(body: ArcPath) -> ArcPath:
-    low, high = body.vertices[:, 1].min() - OVERHANG, body.vertices[:, 1].max() + OVERHANG
-    return ArcPath(np.array([[0.0, low], [0.0, high]]), np.zeros(1))
 
 
 def _notes(chain: Chain, job: Job) -> tuple[str, ...]:
@@ -120,4 +141,5 @@ def _notes(chain: Chain, job: Job) -> tuple[str, ...]:
         f"mould: {job.mould.material or 'material not stated'}",
         f"rim on the mould: radius {rim:.4f}, {height:.4f} {job.units} over the vertex; {cut}",
         f"MOULD_CURVE within {job.tolerance.files.chord_error:g} {job.units} of the exact curve, along the normal",
+        *feature_words(job.mould, job.units),
     )

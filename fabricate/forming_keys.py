@@ -10,13 +10,14 @@ from typing import Annotated, Literal
 from pydantic import Field
 
 from fabricate.job_table import Table
+from fabricate.law_table import LawName
 from fabricate.materials import QUANTITIES, Kind, Material, SourcedValue, has_material, material
 from fabricate.measures import Rows, Words, length, plain
+from fabricate.springback import LAWS as SPRINGBACK_LAWS
+from fabricate.thinning import LAWS as THINNING_LAWS
 
 FaceWord = Literal["concave", "convex"]
 Process = Literal["spinning", "shear-spinning", "drape-forming", "straight-vacuum"]
-SpringbackLaw = Literal["none", "focal-length", "curvature", "bending", "stations"]
-ThinningLaw = Literal["none", "sine-law", "straight-vacuum", "stations"]
 
 _RADIUS = length(0.0, 1e5)
 _PERCENT = plain(-1000.0, 1000.0, unit="%")
@@ -69,10 +70,12 @@ class Sheet(Table):
         description="before forming; or state gauge and gauge_system"
     )
     gauge: int | Annotated[str, Words(1, 8)] | None = Field(
-        default=None, description='number of the gauge, "00" and heavier in quotation marks; instead of thickness'
+        default=None,
+        description='number of the gauge, "00" and heavier in quotation marks, or ounces per square foot; '
+        "instead of thickness",
     )
     gauge_system: Annotated[str | None, Words(1, 20)] = Field(
-        default=None, description="AWG, SWG, USG or MSG: a gauge number alone means nothing"
+        default=None, description="AWG, SWG, USG, MSG, or oz/ft2 of copper: a number alone means nothing"
     )
     thickness_tolerance: Annotated[float, length(0.0, 10.0)] = Field(
         default=0.0, description="+- on the thickness; 0: not known"
@@ -99,7 +102,9 @@ class Sheet(Table):
 class Springback(Table):
     """What the reflecting face does when the sheet lets go of the mould."""
 
-    law: SpringbackLaw = Field(description='how it is stated; "none" says that there is none')
+    law: Annotated[str, LawName(SPRINGBACK_LAWS)] = Field(
+        description='how it is stated; "none" says that there is none'
+    )
     percent: Annotated[float | None, plain(-20.0, 40.0, unit="%")] = Field(
         default=None, description="for the laws focal-length and curvature; negative: the part closes"
     )
@@ -123,7 +128,9 @@ class Springback(Table):
 class Thinning(Table):
     """How thick the formed sheet is."""
 
-    law: ThinningLaw = Field(description='how the sheet thins; "none" says that it keeps its thickness')
+    law: Annotated[str, LawName(THINNING_LAWS)] = Field(
+        description='how the sheet thins; "none" says that it keeps its thickness'
+    )
     stations: Annotated[Pairs | None, Rows(("radius", "thickness"), (_RADIUS, length(0.001, 200.0)))] = Field(
         default=None, description="for the law stations: rows [radius, thickness]"
     )

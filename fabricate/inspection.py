@@ -14,7 +14,6 @@ from numpy.typing import NDArray
 from fabricate.chain import Chain
 from fabricate.measures import MM_PER_INCH, Units
 from outputs.table import Column
-from profiles.meridian import Meridian
 
 Array = NDArray[np.float64]
 
@@ -86,7 +85,7 @@ def sag_table(chain: Chain, units: Units, *, stations: int = STATIONS) -> SagTab
         (sag - band) / unit,
         (sag + band) / unit,
         np.degrees(np.arctan(incline)),
-        _height_at(chain.forming_surface, radius) / unit,
+        _height_at(chain, radius) / unit,
     )
 
 
@@ -147,9 +146,11 @@ def _length(name: str, values: Array, decimals: int) -> Column:
     return Column(name, tuple("" if np.isnan(value) else float(value) for value in values), decimals)
 
 
-def _height_at(surface: Meridian, radius: Array) -> Array:
-    """Return a forming surface's height over its vertex, NaN beyond its end [mm]."""
+def _height_at(chain: Chain, radius: Array) -> Array:
+    """Return the forming surface's height over its vertex, NaN beyond its end and over the pad of a hub [mm]."""
+    surface, hub = chain.forming_surface, chain.job.mould.hub
     reached = radius <= float(surface.radius(surface.end)) * (1.0 + 1e-12)
+    reached &= radius >= (0.0 if hub is None else 0.5 * hub.diameter)
     height = np.full_like(radius, np.nan)
     height[reached] = surface.height(surface.at_radius(radius[reached]))
     return height

@@ -14,9 +14,12 @@ from typing import Any
 
 from pydantic import ValidationError
 
+from fabricate.job_block_rules import BLOCK_RULES
 from fabricate.job_derive import derived, filled_in
 from fabricate.job_facts import Data, Facts, UnknownFactError
-from fabricate.job_findings import Finding, finding_of
+from fabricate.job_feature_rules import FEATURE_RULES
+from fabricate.job_findings import Finding, finding_of, key_of
+from fabricate.job_hole_rules import HOLE_RULES
 from fabricate.job_keys import Job
 from fabricate.job_questions import questions
 from fabricate.job_rules import RULES, Rule
@@ -170,16 +173,29 @@ def _understood(typed: Data) -> tuple[Job | None, list[Finding]]:
         filled = _with_values(filled, values)
         job, errors = _validated(filled, units)
         facts = _facts(filled, typed, errors, units)
-    own = [error for error in errors if not _follows(error, facts)]
+    own = _first_of_each(error for error in errors if not _follows(error, facts))
     # Twice as many as are shown, as some say the same: a large file that is no job has tens of thousands.
     translated = [finding_of(error, units) for error in own[: 2 * _MOST_FINDINGS]]
-    rules = (*RULES, *(TURNING_RULES if "turning" in typed else ()))
+    rules = (
+        *RULES,
+        *(TURNING_RULES if "turning" in typed else ()),
+        *(BLOCK_RULES if "follow_block" in typed else ()),
+        *FEATURE_RULES,
+        *HOLE_RULES,
+    )
     return job, [*translated, *findings, *(finding for rule in rules for finding in _heard(rule, facts))]
 
 
 def _facts(filled: Data, typed: Data, errors: Iterable[Mapping[str, Any]], units: Units) -> Facts:
-    refused = {".".join(str(part) for part in error["loc"] if isinstance(part, str)) for error in errors}
-    return Facts(filled, typed, frozenset(refused), units)
+    return Facts(filled, typed, frozenset(key_of(error["loc"]) for error in errors), units)
+
+
+def _first_of_each(errors: Iterable[Mapping[str, Any]]) -> list[Mapping[str, Any]]:
+    """Return one error for each value: a value that may be of two types is refused by both."""
+    first: dict[tuple[int | str, ...], Mapping[str, Any]] = {}
+    for error in errors:
+        first.setdefault((key_of(error["loc"]), *(part for part in error["loc"] if isinstance(part, int))), error)
+    return list(first.values())
 
 
 def _follows(error: Mapping[str, Any], facts: Facts) -> bool:

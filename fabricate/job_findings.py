@@ -221,8 +221,19 @@ def dotted(place: Place) -> str:
     return ".".join(name if name.isprintable() else ascii(name) for name in names)
 
 
-def _key_of(place: Place) -> str:
-    """Return the dotted key of a place inside the models: what the library adds for the members of a union is cut."""
+def key_of(place: Place) -> str:
+    """Return the dotted key of a place inside the models: what the library adds for the members of a union is cut.
+
+    Parameters
+    ----------
+    place : tuple of str and int
+        Where the library found an error.
+
+    Returns
+    -------
+    str
+        Dotted key.
+    """
     parts: list[str] = []
     table: type[Table] | None = Job
     for part in place:
@@ -253,6 +264,8 @@ def _action(kind: str, key: str, value: Any) -> str:
         return _LOOK_UP
     if kind == "missing":
         return _ADVICE.get(key, "state it")
+    if kind == "int_type" and isinstance(value, float) and value.is_integer() and abs(value) < 1e6:
+        return f"write {value:.0f} without a point"
     return _number_in_words(value) or _STANDARD_ACTIONS.get(kind, "correct the value")
 
 
@@ -274,7 +287,7 @@ def finding_of(error: Mapping[str, Any], units: Units) -> Finding:
     kind, place, value = error["type"], error["loc"], error["input"]
     if kind == "extra_forbidden":
         return _unknown(place, value)
-    key = _key_of(place)
+    key = key_of(place)
     if kind == "missing":
         row = len(place) > key.count(".") + 1
         problem = "a row is too short" if row else "value is missing"

@@ -95,6 +95,46 @@ def _limit_word(job: Job) -> str:
     return ""
 
 
+def _wide_block(job: Job) -> str:
+    block, rim = job.follow_block, job.reflector.rim_diameter
+    if block is None or block.diameter <= 0.5 * rim:
+        return ""
+    return (
+        f"follow_block.diameter is {block.diameter:g} {job.units} and reflector.rim_diameter {rim:g}: more than half "
+        "of the part lies under the block, where no roller reaches; is a block that wide meant?"
+    )
+
+
+def _nothing_under_block(job: Job) -> str:
+    block, hole, bore = job.follow_block, job.reflector.hole_diameter, job.mould.bore_diameter
+    if block is None or block.diameter > max(hole, bore):
+        return ""
+    key, width = ("reflector.hole_diameter", hole) if hole >= bore else ("mould.bore_diameter", bore)
+    return (
+        f"follow_block.diameter is {block.diameter:g} {job.units} and {key} {width:g}: there may be nothing under the "
+        "block to clamp; is a block that narrow meant?"
+    )
+
+
+def _flat_in_the_face(job: Job) -> str:
+    hub, hole = job.mould.hub, job.reflector.hole_diameter
+    if hub is None or hub.diameter <= hole:
+        return ""
+    return (
+        f"mould.hub.diameter is {hub.diameter:g} {job.units} and reflector.hole_diameter {hole:g}: the reflecting face "
+        "would be flat there and reflect past the focus; is a pad that wide meant?"
+    )
+
+
+def _trim_line_of_no_use(job: Job) -> str:
+    if not job.mould.trim_line_depth or job.forming.trim == "on-mould":
+        return ""
+    return (
+        f"mould.trim_line_depth is {job.mould.trim_line_depth:g} {job.units} with forming.trim "
+        f'"{job.forming.trim}": the line shows where the rim would be cut on the mould; is it meant?'
+    )
+
+
 _QUESTIONERS: tuple[Callable[[Job], str], ...] = (
     _spun_into_a_cavity,
     _reverse_spindle,
@@ -104,6 +144,10 @@ _QUESTIONERS: tuple[Callable[[Job], str], ...] = (
     _thinning_of_stretched_sheet,
     _thinning_of_another_process,
     _limit_word,
+    _wide_block,
+    _nothing_under_block,
+    _flat_in_the_face,
+    _trim_line_of_no_use,
 )
 
 

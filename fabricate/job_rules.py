@@ -6,34 +6,19 @@ A *rule* takes the facts and yields findings. The rules of turning stand in ``jo
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Mapping
-from types import MappingProxyType
+from typing import Any
 
-from fabricate.gauges import GAUGE_SYSTEMS
+from fabricate.gauges import GAUGE_SYSTEMS, SHEETS_OF_SYSTEM, numbers_of
 from fabricate.job_derive import depth_of, gauge_in_units, same_length
 from fabricate.job_facts import Facts
 from fabricate.job_findings import Finding, shown
+from fabricate.law_table import LawRow
 from fabricate.materials import Use, has_material, material, nearest_names
+from fabricate.springback import LAWS as SPRINGBACK_LAWS
+from fabricate.thinning import LAWS as THINNING_LAWS
 from profiles.errors import GeometryError
 
 Rule = Callable[[Facts], Iterator[Finding]]
-
-_ONE_OF_THREE = ("percent", "depth_loss", "rim_slope_loss_deg")
-SPRINGBACK_KEYS: Mapping[str, tuple[str, ...]] = MappingProxyType(
-    {
-        "none": (),
-        "focal-length": _ONE_OF_THREE,
-        "curvature": _ONE_OF_THREE,
-        "bending": ("flow_stress_mpa",),
-        "stations": ("stations",),
-    }
-)
-"""For each springback law the keys of which exactly one must be stated."""
-SPRINGBACK_OPTIONS: Mapping[str, tuple[str, ...]] = MappingProxyType({"bending": ("accept_estimate",)})
-"""For each springback law the keys that may be stated beside it."""
-THINNING_KEYS: Mapping[str, tuple[str, ...]] = MappingProxyType(
-    {"none": (), "sine-law": (), "straight-vacuum": (), "stations": ("stations",)}
-)
-"""For each thinning law the keys of which exactly one must be stated."""
 
 _FORBIDDEN_CONTACT = {
     ("drape-forming", "convex"): "a sheet is draped over a male mould, its concave face on it",
@@ -60,14 +45,13 @@ def _thinning_of_process(facts: Facts) -> Iterator[Finding]:
         yield Finding("forming.thinning.law", problem, '"sine-law" or "stations"', "state how the sheet thins")
 
 
-def _law(
-    facts: Facts, table: str, needed: Mapping[str, tuple[str, ...]], optional: tuple[str, ...]
-) -> Iterator[Finding]:
+def _law(facts: Facts, table: str, laws: Mapping[str, LawRow[Any]]) -> Iterator[Finding]:
+    """Refuse a law without its value, with two, or with another law's."""
     law = facts[f"{table}.law"]
-    everything = dict.fromkeys(key for keys in needed.values() for key in keys)
-    stated = [key for key in everything if facts.was_typed(f"{table}.{key}")]
-    wanted = needed[law]
-    for key in [key for key in stated if key not in wanted]:
+    wanted, optional = laws[law].one_of, laws[law].options
+    amounts, options = _keys_of(laws, lambda row: row.one_of), _keys_of(laws, lambda row: row.options)
+    stated = [key for key in amounts if facts.was_typed(f"{table}.{key}")]
+    for key in [key for key in stated if key not in (*wanted, *optional)]:
         problem = f'value is {shown(facts[f"{table}.{key}"])} beside law = "{law}", which has no use for it'
         allowed = ", ".join((*wanted, *optional)) or "no further key"
         yield Finding(f"{table}.{key}", problem, f"with this law {allowed}", f"remove {key} or change law")
@@ -77,23 +61,24 @@ def _law(
     if len(matching) > 1:
         problem = f"{' and '.join(matching)} are stated together"
         yield Finding(f"{table}.{matching[1]}", problem, f"one of {', '.join(wanted)}", "keep one and remove the rest")
+    for key in [key for key in options if key not in (*amounts, *optional) and facts.was_typed(f"{table}.{key}")]:
+        problem = f'value is {shown(facts[f"{table}.{key}"])} beside law = "{law}", which has no use for it'
+        yield Finding(f"{table}.{key}", problem, "with its own law only", f"remove {key}")
+
+
+def _keys_of(laws: Mapping[str, LawRow[Any]], of_row: Callable[[LawRow[Any]], tuple[str, ...]]) -> list[str]:
+    """Return the keys that the rows of a table of laws name, each once."""
+    return list(dict.fromkeys(key for row in laws.values() for key in of_row(row)))
 
 
 def _springback_keys(facts: Facts) -> Iterator[Finding]:
     """Refuse a springback law without its value, with two, or with another law's."""
-    law = facts["forming.springback.law"]
-    optional = SPRINGBACK_OPTIONS.get(law, ())
-    yield from _law(facts, "forming.springback", SPRINGBACK_KEYS, optional)
-    for key in {key for keys in SPRINGBACK_OPTIONS.values() for key in keys} - set(optional):
-        if facts.was_typed(f"forming.springback.{key}"):
-            value = shown(facts[f"forming.springback.{key}"])
-            problem = f'value is {value} beside law = "{law}", which has no use for it'
-            yield Finding(f"forming.springback.{key}", problem, "with its own law only", f"remove {key}")
+    yield from _law(facts, "forming.springback", SPRINGBACK_LAWS)
 
 
 def _thinning_keys(facts: Facts) -> Iterator[Finding]:
     """Refuse a thinning law without its stations or with another law's."""
-    yield from _law(facts, "forming.thinning", THINNING_KEYS, ())
+    yield from _law(facts, "forming.thinning", THINNING_LAWS)
 
 
 def _thinning_stations(facts: Facts) -> Iterator[Finding]:
@@ -210,10 +195,22 @@ def _gauge_and_thickness(facts: Facts) -> Iterator[Finding]:
             "sheet.gauge_system", f"value is {shown(system)}", names, "write one of these, or state the thickness"
         )
     elif system is not None and str(gauge) not in GAUGE_SYSTEMS[system]:
-        allowed = f"the numbers of {system}: {', '.join(GAUGE_SYSTEMS[system])}"
+        allowed = f"the numbers of {system}: {numbers_of(system)}"
         yield Finding("sheet.gauge", f"value is {shown(gauge)}", allowed, "correct it, or state the thickness")
     elif system is not None:
         yield from _gauge_against_thickness(facts)
+
+
+def _gauge_of_another_metal(facts: Facts) -> Iterator[Finding]:
+    """Refuse a gauge system that is of one metal only, for a sheet of the table that is of another."""
+    system, name = facts["sheet.gauge_system"], facts["sheet.material"]
+    metal = SHEETS_OF_SYSTEM.get(system)
+    if metal is None or not has_material(str(name), "sheet") or str(name).startswith(f"{metal} "):
+        return
+    problem = f'value is {shown(system)} with material = "{name}": a weight per area is a thickness of {metal} only'
+    others = ", ".join(other for other in GAUGE_SYSTEMS if other not in SHEETS_OF_SYSTEM)
+    allowed = f"a sheet of {metal}, or one of {others}"
+    yield Finding("sheet.gauge_system", problem, allowed, "correct material or gauge_system, or state the thickness")
 
 
 def _gauge_against_thickness(facts: Facts) -> Iterator[Finding]:
@@ -296,6 +293,7 @@ RULES: tuple[Rule, ...] = (
     _mould_material,
     _depth_and_focal_length,
     _gauge_and_thickness,
+    _gauge_of_another_metal,
     _holes,
     _spigot,
     _coating,

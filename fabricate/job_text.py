@@ -9,10 +9,8 @@ from typing import Any
 
 from fabricate.forming_keys import Springback
 from fabricate.job_keys import Job
-from fabricate.job_rules import SPRINGBACK_OPTIONS
 from fabricate.job_table import Table
-
-_OPTIONS = frozenset(key for keys in SPRINGBACK_OPTIONS.values() for key in keys)
+from fabricate.springback import LAWS as SPRINGBACK_LAWS
 
 
 def toml_value(value: Any) -> str:
@@ -71,9 +69,11 @@ def _lines(table: Table, path: str) -> Iterator[str]:
 
 
 def _is_used(table: Table, name: str) -> bool:
-    if not isinstance(table, Springback) or name not in _OPTIONS:
+    """Whether a key says anything: an option of springback's means nothing to another law."""
+    if not isinstance(table, Springback) or all(name not in row.options for row in SPRINGBACK_LAWS.values()):
         return True
-    return name in SPRINGBACK_OPTIONS.get(table.law, ())
+    row = SPRINGBACK_LAWS[table.law]
+    return name in (*row.one_of, *row.options)
 
 
 def job_hash(text: str) -> str:

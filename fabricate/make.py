@@ -9,11 +9,25 @@ from pathlib import Path
 from typing import Any
 
 from fabricate.drawing import lathe_drawing
+from fabricate.follow_block_drawing import block_drawing
 from fabricate.inspection import sag_columns, sag_table
 from fabricate.notices import notices
-from fabricate.order import DRAWING, JOB, PACKAGE_FILES, PROGRAM, PROOF, SOLID, TABLE, Order
+from fabricate.order import (
+    BLOCK_DRAWING,
+    BLOCK_PROGRAM,
+    DRAWING,
+    EVERY_FILE,
+    JOB,
+    PROGRAM,
+    PROOF,
+    SOLID,
+    TABLE,
+    Order,
+)
+from fabricate.part_report import predicted_parts, prediction_json
+from fabricate.predicted import PredictedPart
 from fabricate.proof import Proof, prove_files
-from outputs.dxf import write_drawing
+from outputs.dxf import Drawing, write_drawing
 from outputs.gcode import write_program
 from outputs.package import staged, write_file
 from outputs.stl import write_stl
@@ -46,10 +60,13 @@ class MadePackage:
         Where it stands.
     proof : Proof
         What was found when its files were read back.
+    parts : mapping of str to PredictedPart
+        The part that each written curve leads to, by file name.
     """
 
     folder: Path
     proof: Proof
+    parts: Mapping[str, PredictedPart]
 
 
 def make_package(order: Order, folder: Path, *, replace: bool = False) -> MadePackage:
@@ -84,16 +101,17 @@ def make_package(order: Order, folder: Path, *, replace: bool = False) -> MadePa
         replace=replace,
         same_package=lambda found: _is_same_package(found, order),
         expendable=lambda found: _is_unfilled(found / TABLE),
+        names=EVERY_FILE,
     ) as place:
         for name in order.file_names:
             contents[name](place / name)
         proof = prove_files(order, place)
         if not proof.passed:
             raise ProofFailedError(proof)
-        write_file(
-            place / PROOF, json.dumps(_stated(order, proof), indent=1, ensure_ascii=False, allow_nan=False) + "\n"
-        )
-    return MadePackage(folder, proof)
+        parts = predicted_parts(order, place)
+        stated = _stated(order, proof) | {"predicted": prediction_json(order, parts)}
+        write_file(place / PROOF, json.dumps(stated, indent=1, ensure_ascii=False, allow_nan=False) + "\n")
+    return MadePackage(folder, proof, parts)
 
 
 def _stated(order: Order, proof: Proof) -> dict[str, Any]:
@@ -104,12 +122,13 @@ def _stated(order: Order, proof: Proof) -> dict[str, Any]:
 def _contents(order: Order) -> Mapping[str, Callable[[Path], None]]:
     """Return what writes each file; everything that a job can be refused for is computed before."""
     job = order.job
+    _ = order.blank  # what it is refused for is found before anything is written
     drawing = lathe_drawing(order.chain, order.forming_arcs.path, job)
     mesh = order.mesh
     program = order.turning_plan.program if job.turning is not None else None
     table = sag_columns(sag_table(order.chain, job.units), order.sha256, order.tolerance)
-    return {
-        DRAWING: lambda path: write_drawing(drawing, path, version=job.drawing.version, entities=job.drawing.entities),
+    return _block_contents(order) | {
+        DRAWING: lambda path: _draw(drawing, path, order),
         SOLID: lambda path: write_stl(mesh.vertices, mesh.triangles, path, label=f"{job.title} mm"),
         PROGRAM: lambda path: write_file(path, write_program(program) if program else ""),
         TABLE: lambda path: write_file(path, table_text(table)),
@@ -117,9 +136,27 @@ def _contents(order: Order) -> Mapping[str, Callable[[Path], None]]:
     }
 
 
+def _block_contents(order: Order) -> dict[str, Callable[[Path], None]]:
+    """Return what writes the files of a follow block, for a job that asks for one."""
+    if order.job.follow_block is None:
+        return {}
+    drawing = block_drawing(order.follow_block, order.block_arcs.path, order.job)
+    program = order.block_plan.program if order.turns_block else None
+    return {
+        BLOCK_DRAWING: lambda path: _draw(drawing, path, order),
+        BLOCK_PROGRAM: lambda path: write_file(path, write_program(program) if program else ""),
+    }
+
+
+def _draw(drawing: Drawing, path: Path, order: Order) -> None:
+    asked = order.job.drawing
+    write_drawing(drawing, path, version=asked.version, entities=asked.entities)
+
+
 def _is_same_package(folder: Path, order: Order) -> bool:
     """Whether a folder holds a package of the same job and nothing of anybody's own, such as readings."""
-    strange = [entry for entry in folder.iterdir() if entry.name not in PACKAGE_FILES or not entry.is_file()]
+    names = (*order.file_names, PROOF)
+    strange = [entry for entry in folder.iterdir() if entry.name not in names or not entry.is_file()]
     if strange or not (folder / JOB).is_file():
         return False
     if (folder / JOB).read_bytes() != order.text.encode("utf-8"):

@@ -106,4 +106,6 @@ class FollowBlock(Table):
     bore_diameter: Annotated[float, length(0.0, 1e5)] = Field(
         default=0.0, description="through the block, for a pilot or a tail centre; 0: none"
     )
-    program: bool = Field(default=False, description="write a turning program for it too, with the job's [turning]")
+    program: bool = Field(
+        default=False, description="write its turning program too, by [turning], whose rim_speed_limit must be stated"
+    )

@@ -3,19 +3,20 @@
 A male mould is trued on its outside, faced, and roughed by cuts from outside inwards, each a depth of cut nearer to the
 headstock. A female one is faced and roughed from the axis outwards; each cut enters by a ramp that falls towards the
 axis, so that the insert never drills. A last roughing cut along the contour leaves the allowance, and the finishing cut
-runs from the axis outwards and off the part. Rapids run along X or along Z only, as not every control moves straight
-when both go at once. Every pass begins and ends at home, clear of the stock.
+runs from the axis outwards and off the part. A trim line is scribed last. Rapids run along X or along Z only, as not
+every control moves straight when both go at once. Every pass begins and ends at home, clear of the stock.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
-from itertools import pairwise
+from itertools import chain, pairwise
 
 import numpy as np
 
 from fabricate.contour import HEIGHT, RADIUS, Contour, place_at
+from fabricate.feature_passes import groove_blocks, outside_cut, trim_line_blocks
 from fabricate.turning_setup import CLEARANCE, FLANK, LIFT, Setup
 from outputs.gcode import Block, Comment, Feed, Rapid
 from profiles.arcpath import ArcPath
@@ -27,6 +28,8 @@ ROUGHING = "ROUGH"
 CONTOURING = "ROUGH ALONG THE CONTOUR"
 FINISHING = "FINISH"
 EDGING = "FINISH EDGE AND LAND"
+HUB = "FINISH HUB"
+TRIM_LINE = "TRIM LINE"
 SECTIONS = (TRUING, FACING, ROUGHING, CONTOURING, FINISHING, EDGING)
 
 MOST_CUTS = 2000
@@ -44,11 +47,14 @@ class Passes:
         Where the nose centre runs to leave the finishing allowance [mm].
     finished : Contour
         Where it runs to finish [mm].
+    grooves : tuple of ArcPath
+        Where it runs to rough the groove of a lead-out, cut by cut [mm].
     """
 
     setup: Setup
     roughed: Contour
     finished: Contour
+    grooves: tuple[ArcPath, ...] = ()
 
     def untrued(self) -> Iterator[Block]:
         """Yield what is cut before the stock runs true: outside and front.
@@ -68,7 +74,7 @@ class Passes:
         yield from _section(FACING, self._cuts(self.setup.stock.front, self._face_levels))
 
     def trued(self) -> Iterator[Block]:
-        """Yield what is cut once the stock runs true: roughing and finishing.
+        """Yield what is cut once the stock runs true: roughing, finishing and the trim line.
 
         Yields
         ------
@@ -81,8 +87,10 @@ class Passes:
             If a depth of cut asks for too many cuts.
         """
         yield from _section(ROUGHING, self._cuts(self._faced_to, self._rough_levels))
-        yield from _section(CONTOURING, self._along_contour())
+        yield from _section(CONTOURING, chain(self._along_contour(), groove_blocks(self.setup, self.grooves)))
         yield from self._finish()
+        if self.setup.mould.trim_line is not None:
+            yield from _section(TRIM_LINE, trim_line_blocks(self.setup))
 
     @property
     def _faced_to(self) -> float:
@@ -101,21 +109,22 @@ class Passes:
     def _outside(self) -> Iterator[Block]:
         """Yield cuts along the outer side, the last one a finishing cut."""
         setup, turning = self.setup, self.setup.turning
-        last = min(turning.finish_allowance, turning.stock_allowance)
+        last = min(turning.finish_allowance, turning.stock_allowance + setup.mould.widest - setup.mould.outer_radius)
         rough = self._levels(setup.stock.radius, setup.mould.outer_radius + last)
         radii = [(radius, turning.roughing_feed) for radius in rough]
         radii += [(setup.mould.outer_radius, turning.finishing_feed)] if last > 0.0 else []
         if not radii:
             return
-        end = setup.reach + setup.nose
         yield Rapid(setup.home[0], setup.above)
         for radius, feed in radii:
-            centre = radius + setup.nose
-            yield Rapid(centre, setup.above)
-            yield Feed(centre, end, 0.0, feed)
-            yield Feed(centre + LIFT, end + LIFT, 0.0, turning.roughing_feed)
-            yield Rapid(centre + LIFT, setup.above)
-        yield from _go_home(setup, setup.mould.outer_radius + setup.nose + LIFT)
+            places = outside_cut(setup, radius)
+            yield Rapid(places[0][0], setup.above)
+            for place in places:
+                yield Feed(*place, 0.0, feed)
+            beside, end = places[-1][0] + LIFT, places[-1][1]
+            yield Feed(beside, end + LIFT, 0.0, turning.roughing_feed)
+            yield Rapid(beside, setup.above)
+        yield from _go_home(setup, beside)
 
     @property
     def _face_levels(self) -> list[float]:
@@ -184,7 +193,8 @@ class Passes:
         setup, feed, path = self.setup, self.setup.turning.finishing_feed, self.finished
         yield from self._enter(self._lead_in(), path.whole, feed)
         if path.under_bore is not None:
-            yield from _feeds(path.under_bore, feed)
+            inner = _feeds(path.under_bore, feed)
+            yield from inner if setup.mould.hub is None else _section(HUB, inner)
         yield from _section(FINISHING, _feeds(path.forming, feed))
         yield from _section(EDGING, _feeds(path.edge, feed))
         yield from _leave(setup, path.edge)

@@ -9,6 +9,7 @@ import math
 import textwrap
 
 from fabricate.job_keys import Job
+from fabricate.mould_features import feature_words
 from fabricate.speeds import Limits
 from fabricate.turning_setup import FLANK, Setup
 from outputs.gcode import Comment, comment_lines
@@ -31,7 +32,7 @@ STOP_TO_CHECK = (
 )
 
 
-def header(job: Job, setup: Setup, limits: Limits, *, lowest: float) -> tuple[Comment, ...]:
+def header(job: Job, setup: Setup, limits: Limits, *, lowest: float, part: str = "mould") -> tuple[Comment, ...]:
     """Return the comments at the head of a turning program.
 
     Parameters
@@ -44,13 +45,15 @@ def header(job: Job, setup: Setup, limits: Limits, *, lowest: float) -> tuple[Co
         What the spindle may do.
     lowest : float
         Lowest Z of the nose in any move [mm].
+    part : str
+        What is turned.
 
     Returns
     -------
     tuple of Comment
         In order; lengths in the job's units.
     """
-    texts = [*_what(job, setup), *_tool(job, setup), *_spindle(job, limits), *_cautions(job, setup, lowest)]
+    texts = [*_what(job, setup, part), *_tool(job, setup), *_spindle(job, limits), *_cautions(job, setup, lowest)]
     return (*_user_lines(job), *(Comment(text) for text in texts))
 
 
@@ -86,29 +89,48 @@ def _user_lines(job: Job) -> tuple[Comment, ...]:
     return tuple(lines)
 
 
-def _what(job: Job, setup: Setup) -> list[str]:
+def _what(job: Job, setup: Setup, part: str) -> list[str]:
     mould, stock = setup.mould, setup.stock
     front, back = setup.text(stock.front), setup.text(stock.back)
     diameter = setup.text(2.0 * stock.radius)
-    bored = " virtual under the bore," if mould.bore_radius else ""
-    zero = f"vertex,{bored}" if setup.male else "plane of the land," if mould.rim is not None else "top of the lip,"
     texts = [
-        f"{mould.kind} mould of {job.mould.material or 'material not stated'}",
+        f"{mould.kind} {part} of {job.mould.material or 'material not stated'}",
         f"lengths in {job.units}, X a {job.turning.control.x_word if job.turning else 'diameter'}, feed per revolution",
-        f"work zero: on the axis, at the {zero} Z away from the headstock",
+        f"work zero: on the axis, at the {_zero(setup, part)}, Z away from the headstock",
         f"stock: solid cylinder of diameter {diameter}, Z {back} to {front}",
         *_outside(setup),
+        *_features(job, setup),
     ]
     return [*texts, "the bore is made elsewhere"] if mould.bore_radius else texts
 
 
-def _outside(setup: Setup) -> list[str]:
-    diameter = setup.text(2.0 * setup.mould.outer_radius)
+def _zero(setup: Setup, part: str) -> str:
+    """Say where on the axis the work zero lies."""
     if setup.male:
-        return [f"outside: turned to diameter {diameter} down to Z {setup.text(setup.reach)}, the rest is held"]
+        virtual = setup.mould.bore_radius or setup.mould.hub is not None
+        return f"vertex, virtual {'at the hub' if setup.mould.hub else 'under the bore'}" if virtual else "vertex"
+    return "plane of the land" if setup.mould.edge_and_land is not None and part == "mould" else "top of the lip"
+
+
+def _features(job: Job, setup: Setup) -> list[str]:
+    """Return what hub, lead-out, draft and trim line are, and where the hub stands."""
+    texts, hub = list(feature_words(job.mould, job.units)), setup.mould.hub
+    if hub is not None:
+        texts.append(f"the pad lies at Z {setup.text(hub.vertices[-1, 1])}")
+    if hub is not None and len(hub) > 1:
+        texts.append(f"the pilot ends at Z {setup.text(setup.mould.top)}; its foot keeps a fillet of the nose's radius")
+    return texts
+
+
+def _outside(setup: Setup) -> list[str]:
+    diameter = f"diameter {setup.text(2.0 * setup.mould.outer_radius)}"
+    if setup.mould.draft:
+        diameter = f"a taper, {diameter} at the land, {setup.text(2.0 * setup.mould.widest)} at the base,"
+    if setup.male:
+        return [f"outside: turned to {diameter} down to Z {setup.text(setup.reach)}, the rest is held"]
     return [
         "outside: not turned here, as an insert for cavities cannot",
-        f"true it before, with another tool and under the limit for untrued stock; final diameter {diameter}",
+        f"true it before, with another tool and under the limit for untrued stock; final {diameter.rstrip(',')}",
     ]
 
 
@@ -133,6 +155,10 @@ def _tool(job: Job, setup: Setup) -> list[str]:
 def _clearances(setup: Setup) -> list[str]:
     """Return what the insert's flanks and holder must clear."""
     slope = math.ceil(math.degrees(float(setup.mould.curve.slope.largest()[1])))
+    hub = setup.mould.hub
+    if setup.male and hub is not None and len(hub) > 1:
+        height = setup.text(hub.vertices[0, 1] - hub.vertices[-1, 1])
+        return [f"flanks and holder must clear the pilot, a wall of 90 deg, {height} high, and the land behind"]
     if setup.male:
         return [f"flanks and holder must clear a wall of {slope} deg towards the axis, and the land behind the cut"]
     ramp = math.ceil(math.degrees(math.atan(FLANK)) - 1e-9)

@@ -12,8 +12,9 @@ from importlib.metadata import version
 from pathlib import Path
 from typing import Any
 
-from fabricate.order import DRAWING, JOB, PROGRAM, PROOF, SOLID, TABLE, Order
+from fabricate.order import BLOCK_DRAWING, BLOCK_PROGRAM, DRAWING, JOB, PROGRAM, PROOF, SOLID, TABLE, Order
 from fabricate.prove_drawing import prove_drawing
+from fabricate.prove_follow_block import prove_block_drawing, prove_block_program
 from fabricate.prove_papers import prove_job, prove_proof, prove_table
 from fabricate.prove_program import prove_program
 from fabricate.prove_solid import prove_solid
@@ -61,6 +62,8 @@ PROVERS: Mapping[str, Callable[[Path, Order], FileVerdict]] = {
     DRAWING: prove_drawing,
     SOLID: prove_solid,
     PROGRAM: prove_program,
+    BLOCK_DRAWING: prove_block_drawing,
+    BLOCK_PROGRAM: prove_block_program,
     TABLE: prove_table,
     JOB: prove_job,
     PROOF: prove_proof,
@@ -98,7 +101,8 @@ def prove_package(order: Order, folder: Path) -> Proof:
     Returns
     -------
     Proof
-        A verdict for each file. A turning program in the package of a job that asks for none has failed.
+        A verdict for each file. A turning program or a follow block's file in the package of a job that asks for none
+        has failed.
 
     Raises
     ------
@@ -110,7 +114,8 @@ def prove_package(order: Order, folder: Path) -> Proof:
     if not folder.is_dir():
         raise WriteError(f"{folder}: no such folder; allowed: the folder of a work package; do: check the name")
     _ = order.exact_solid  # what the job itself is refused for is no fault of a file
-    stray = (PROGRAM,) if PROGRAM not in order.file_names and (folder / PROGRAM).exists() else ()
+    optional = [name for name in (PROGRAM, BLOCK_DRAWING, BLOCK_PROGRAM) if name not in order.file_names]
+    stray = [name for name in optional if (folder / name).exists()]
     return _proof(order, folder, (*order.file_names, *stray, PROOF))
 
 

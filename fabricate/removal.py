@@ -19,6 +19,7 @@ import numpy as np
 
 from fabricate.job_keys import Job
 from fabricate.mould import Mould
+from fabricate.removal_features import filleted, marked
 from fabricate.turning_setup import FLANK, Setup
 from outputs.gcode_reader import Move, Replay
 from profiles.arcpath import ArcPath, Array
@@ -81,12 +82,12 @@ def replay_removal(replay: Replay, job: Job, mould: Mould) -> Removal:
     setup = Setup.of(job, mould)
     steps = tuple(_steps(replay, setup))
     inserts = [_insert(setup, step.points) for step in steps]
-    finished = shapely.Polygon(_section(setup))
+    finished = marked(setup, shapely.Polygon(_section(setup)))
     left_over, findings = _cut(setup, steps, inserts)
     gouge, where = _gouge(setup, steps, inserts, finished)
     if gouge > setup.chord_error + COARSE:
         findings.append(("gouge", f"line {where}: the insert cuts {gouge:.4f} mm into the finished mould"))
-    left, place = _left(setup, left_over, finished)
+    left, place = _left(setup, left_over, filleted(setup, finished))
     if left > setup.chord_error + SLACK:
         code = "nub" if place[0] < setup.nose else "left-standing"
         findings.append((code, f"{left:.4f} mm is left standing at radius {place[0]:.3f}, Z {place[1]:.3f} mm"))

@@ -1,7 +1,7 @@
 """Laws of springback: what the reflecting face does when the sheet lets go of the mould.
 
 Every law ties the meridional curvature of the face as it lies on the mould to that of the released face, at equal arc
-length, both ways: a :class:`CurvatureMap`. A meridian is assumed to keep its length on release.
+length, both ways: a `CurvatureMap`. A meridian is assumed to keep its length on release.
 
 A new law is one function here and one row in :data:`LAWS`.
 """
@@ -10,103 +10,59 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
+from functools import cache
+from typing import Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
 from fabricate.bending import BendingSheet, bent_after, bent_before, elastic_curvature
-from fabricate.forming_keys import Springback
+from fabricate.curvature_map import CurvatureMap, ReleasedFace, depth_loss, rim_slope_loss
+from fabricate.law_table import LawRow
 from profiles.errors import GeometryError, JobError
 from profiles.face import Face
 from profiles.meridian import Meridian
-from profiles.series import Series, merged_breaks, resolve
+from profiles.series import merged_breaks, resolve
 
 Array = NDArray[np.float64]
 
 LEAST_PERCENT, MOST_PERCENT = -20.0, 40.0
+HALVINGS = 24
 
 
-@dataclass(frozen=True, eq=False)
-class ReleasedFace:
-    """The reflecting face of the finished part, released.
+class SpringbackTable(Protocol):
+    """What a law may read of the job's table ``[forming.springback]``, lengths in millimetres.
 
-    Parameters
-    ----------
-    face : Face
-        Its equation.
-    meridian : Meridian
-        Its curve from the axis to the end of the trim, by its own arc length [mm].
-    rim : float
-        Arc length at the rim [mm].
+    The keys are those of `fabricate.forming_keys.Springback`, where their units and meaning stand.
     """
 
-    face: Face
-    meridian: Meridian
-    rim: float
+    @property
+    def law(self) -> str:
+        """Name of the law."""
 
+    @property
+    def percent(self) -> float | None:
+        """Percentage of the law [%]."""
 
-Bends = Callable[[Array, Array], Array]
-"""Curvatures [1/mm] at arc lengths [mm] from the curvatures [1/mm] on the other side of a release."""
+    @property
+    def depth_loss(self) -> float | None:
+        """Depth on the mould less that of the part [mm]."""
 
+    @property
+    def rim_slope_loss_deg(self) -> float | None:
+        """Slope of the rim on the mould less that of the part [degrees]."""
 
-@dataclass(frozen=True, eq=False)
-class CurvatureMap:
-    """The meridional curvature on the mould and of the released part, each from the other.
+    @property
+    def stations(self) -> tuple[tuple[float, float], ...] | None:
+        """Rows of radius on the finished face [mm] and percentage [%]."""
 
-    Parameters
-    ----------
-    loaded : callable
-        Curvature on the mould from arc length and curvature of the released face [1/mm].
-    released : callable
-        Its inverse.
-    breaks : ndarray
-        Arc lengths between which both are smooth [mm]; empty where they are so everywhere.
-    """
+    @property
+    def flow_stress_mpa(self) -> float | None:
+        """Flow stress after forming [MPa]."""
 
-    loaded: Bends
-    released: Bends
-    breaks: Array
-
-    @classmethod
-    def of(cls, *, gain: float = 1.0, shift: Series | None = None) -> CurvatureMap:
-        """Return the map ``κ_mould = gain κ_part + shift``.
-
-        Parameters
-        ----------
-        gain : float
-            Factor [-].
-        shift : Series or None
-            What is added over the arc length [1/mm]; None for nothing.
-        """
-
-        def added(where: Array) -> Array | float:
-            return 0.0 if shift is None else shift(where)
-
-        return cls(
-            lambda where, bend: np.asarray(gain * bend + added(where)),
-            lambda where, bend: np.asarray((bend - added(where)) / gain),
-            np.empty(0) if shift is None else shift.breaks,
-        )
-
-    def load(self, part: Meridian) -> Meridian:
-        """Return the face as it lies on the mould, from the released face [mm]."""
-        return self._mapped(part, self.loaded)
-
-    def release(self, on_mould: Meridian) -> Meridian:
-        """Return the released face, from the face as it lies on the mould [mm]."""
-        return self._mapped(on_mould, self.released)
-
-    def _mapped(self, meridian: Meridian, change: Bends) -> Meridian:
-        start, end = meridian.start, meridian.end
-        breaks = merged_breaks(meridian.breaks, self.breaks, start=start, end=end)
-        # Sizes of curvatures are measured against a turn of one radian over the whole length.
-        (bend,) = resolve(
-            lambda where: change(where, meridian.curvature(where))[None], breaks, sizes=[10.0 / (end - start)]
-        )
-        first = np.asarray(meridian.start)
-        return Meridian.of_curvature(
-            bend, slope=float(meridian.slope(first)), radius=float(meridian.radius(first))
-        ).raised(float(meridian.height(first)))
+    @property
+    def accept_estimate(self) -> bool:
+        """Whether an estimate of more than 40 % is accepted."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -117,14 +73,14 @@ class StatedSpringback:
     ----------
     part : ReleasedFace
         The released reflecting face [mm].
-    table : Springback
+    table : SpringbackTable
         The table of the job, in millimetres.
     sheet : BendingSheet
         The sheet.
     """
 
     part: ReleasedFace
-    table: Springback
+    table: SpringbackTable
     sheet: BendingSheet
 
 
@@ -162,10 +118,27 @@ def curvature_law(_stated: StatedSpringback, percent: float) -> CurvatureMap:
 
 def stations_law(stated: StatedSpringback, _percent: float) -> CurvatureMap:
     """Return the map of ``κ_mould(s) = κ_part(s) + p(r)/100 · 1/(2f)``, PCHIP between rows, constant beyond."""
-    rows = np.array(stated.table.stations)
+    return added_curvature(stated.part, np.array(stated.table.stations))
+
+
+def added_curvature(part: ReleasedFace, rows: Array) -> CurvatureMap:
+    """Return the map that a table of stations makes.
+
+    Parameters
+    ----------
+    part : ReleasedFace
+        The released reflecting face [mm].
+    rows : ndarray of shape (n, 2)
+        Radius on the finished face, increasing [mm], and what the mould has more there in parts of 1/(2f) [%].
+
+    Returns
+    -------
+    CurvatureMap
+        ``κ_mould(s) = κ_part(s) + p(r)/100 · 1/(2f)``, PCHIP between rows, constant beyond.
+    """
     percent = table_over_radius(rows[:, 0], rows[:, 1])
-    meridian, end = stated.part.meridian, stated.part.meridian.end
-    unit = 0.01 / stated.part.face.vertex_radius
+    meridian, end = part.meridian, part.meridian.end
+    unit = 0.01 / part.face.vertex_radius
     breaks = merged_breaks(meridian.breaks, arc_lengths_at(meridian, rows[:, 0]), start=0.0, end=end)
     (shift,) = resolve(lambda where: unit * percent(meridian.radius(where))[None], breaks, sizes=[10.0 / end])
     return CurvatureMap.of(shift=shift)
@@ -218,13 +191,17 @@ def bending_law(stated: StatedSpringback, _percent: float) -> CurvatureMap:
     return CurvatureMap(loaded, released, np.empty(0))
 
 
-LAWS: Mapping[str, Law] = {
-    "none": no_springback,
-    "focal-length": focal_length_law,
-    "curvature": curvature_law,
-    "bending": bending_law,
-    "stations": stations_law,
+SHOP_TERMS = ("percent", "depth_loss", "rim_slope_loss_deg")
+"""The keys of which any one states the amount of a law that has a percentage."""
+
+LAWS: Mapping[str, LawRow[Law]] = {
+    "none": LawRow(no_springback),
+    "focal-length": LawRow(focal_length_law, one_of=SHOP_TERMS),
+    "curvature": LawRow(curvature_law, one_of=SHOP_TERMS),
+    "bending": LawRow(bending_law, one_of=("flow_stress_mpa",), options=("accept_estimate",)),
+    "stations": LawRow(stations_law, one_of=("stations",)),
 }
+"""Every law of springback by the name that the job gives it."""
 
 
 def springback_map(stated: StatedSpringback) -> CurvatureMap:
@@ -243,57 +220,102 @@ def springback_map(stated: StatedSpringback) -> CurvatureMap:
     Raises
     ------
     JobError
-        If the law is not built in, or no percentage in range gives what is stated.
+        If no percentage in range gives what is stated.
     """
-    law = stated.table.law
-    if law not in LAWS:
-        raise JobError(
-            f'forming.springback.law: value is "{law}"; allowed: {", ".join(LAWS)}; do: state the springback in '
-            "one of these"
-        )
-    return LAWS[law](stated, percent_of(stated))
+    return LAWS[stated.table.law].make(stated, percent_of(stated))
 
 
 def percent_of(stated: StatedSpringback) -> float:
-    """Return the percentage of the stated law, solved for where the depth or slope lost is given [%]."""
-    table, part = stated.table, stated.part
+    """Return the percentage of the stated law, solved for where the depth or slope lost is given [%].
+
+    Raises
+    ------
+    JobError
+        If no percentage in range gives what is stated.
+    """
+    table, law = stated.table, stated.table.law
     if table.depth_loss is not None:
-        wanted, lost, key = table.depth_loss, depth_loss, "depth_loss"
+        percent, key = percent_losing(stated, law, table.depth_loss, loss=depth_loss), "depth_loss"
     elif table.rim_slope_loss_deg is not None:
-        wanted, lost, key = np.radians(table.rim_slope_loss_deg), rim_slope_loss, "rim_slope_loss_deg"
+        slope = float(np.radians(table.rim_slope_loss_deg))
+        percent, key = percent_losing(stated, law, slope, loss=rim_slope_loss), "rim_slope_loss_deg"
     else:
         return 0.0 if table.percent is None else table.percent
+    if percent is None:
+        low, high = percents_followed(lambda tried: depth_loss(stated.part, LAWS[law].make(stated, tried)))
+        raise JobError(
+            f"forming.springback.{key}: value is {getattr(table, key):g}; allowed: what {low:.4g} to {high:.4g} % of "
+            "springback give; do: check the value and its sign"
+        )
+    return percent
 
-    def excess(percent: float) -> float:
-        return lost(part, LAWS[table.law](stated, percent)) - wanted
 
-    return _solved(excess, f"forming.springback.{key}", getattr(table, key))
+def percent_losing(
+    stated: StatedSpringback, law: str, wanted: float, *, loss: Callable[[ReleasedFace, CurvatureMap], float]
+) -> float | None:
+    """Return the percentage under which a law loses as much as is wanted, solved for and not approximated.
 
+    Parameters
+    ----------
+    stated : StatedSpringback
+        Released face, table and sheet.
+    law : str
+        A law of `LAWS` that has a percentage.
+    wanted : float
+        The loss [mm or rad].
+    loss : callable
+        `depth_loss` [mm] or `rim_slope_loss` [rad].
 
-def _solved(excess: Callable[[float], float], key: str, value: float) -> float:
+    Returns
+    -------
+    float or None
+        The percentage [%]; None where none from −20 to 40 loses that much.
+    """
     from scipy.optimize import brentq
 
-    low, high = LEAST_PERCENT, MOST_PERCENT
-    try:
-        at_low, at_high = excess(low), excess(high)
-    except GeometryError as error:
-        raise JobError(f"{key}: value is {value:g}; allowed: what the face can follow; do: {error}") from error
-    if at_low * at_high > 0.0:
-        raise JobError(
-            f"{key}: value is {value:g}; allowed: what {low:g} to {high:g} % of springback give; "
-            "do: check the value and its sign"
-        )
-    return float(brentq(excess, low, high, xtol=1e-13, rtol=1e-14))
+    @cache
+    def lost(percent: float) -> float:
+        return loss(stated.part, LAWS[law].make(stated, percent))
+
+    low, high = percents_followed(lost)
+    if (lost(low) - wanted) * (lost(high) - wanted) > 0.0:
+        return None
+    return float(brentq(lambda percent: lost(percent) - wanted, low, high, xtol=1e-13, rtol=1e-14))
 
 
-def depth_loss(part: ReleasedFace, springback: CurvatureMap) -> float:
-    """Return the depth on the mould less that of the part, vertex to rim, at the rim's material point [mm]."""
-    return float(springback.load(part.meridian).height(part.rim) - part.meridian.height(part.rim))
+def percents_followed(lost: Callable[[float], float]) -> tuple[float, float]:
+    """Return the least and the greatest percentage that a face can be followed under, −20 and 40 at most.
+
+    Parameters
+    ----------
+    lost : callable
+        What is lost at a percentage; raises GeometryError where the face closes before its trim, as an ellipse may.
+
+    Returns
+    -------
+    least, greatest : float
+        Percentages [%].
+    """
+    return _followed(lost, LEAST_PERCENT), _followed(lost, MOST_PERCENT)
 
 
-def rim_slope_loss(part: ReleasedFace, springback: CurvatureMap) -> float:
-    """Return the rim's slope on the mould less that of the part, at the rim's material point [rad]."""
-    return float(springback.load(part.meridian).slope(part.rim) - part.meridian.slope(part.rim))
+def _followed(lost: Callable[[float], float], bound: float) -> float:
+    """Return the bound, or how near to it the face can be followed."""
+
+    def follows(percent: float) -> bool:
+        try:
+            lost(percent)
+        except GeometryError:
+            return False
+        return True
+
+    if follows(bound):
+        return bound
+    near, far = 0.0, bound
+    for _ in range(HALVINGS):
+        middle = 0.5 * (near + far)
+        near, far = (middle, far) if follows(middle) else (near, middle)
+    return near
 
 
 def table_over_radius(radii: Array, values: Array) -> Callable[[Array], Array]:

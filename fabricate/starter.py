@@ -10,15 +10,17 @@ from collections.abc import Collection, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from difflib import get_close_matches
 from textwrap import wrap
-from typing import Literal
+from typing import Any, Literal
 
 from fabricate.job_findings import all_keys, allowed_values, inner_table, shown
 from fabricate.job_keys import Job
-from fabricate.job_rules import SPRINGBACK_KEYS, SPRINGBACK_OPTIONS, THINNING_KEYS
 from fabricate.job_table import Table, measure_of
 from fabricate.job_text import toml_value
+from fabricate.law_table import LawRow
 from fabricate.materials import has_material, material
 from fabricate.measures import Units
+from fabricate.springback import LAWS as SPRINGBACK_LAWS
+from fabricate.thinning import LAWS as THINNING_LAWS
 from profiles.errors import JobError
 
 JobValue = str | bool | int | float | Sequence["JobValue"]
@@ -33,6 +35,10 @@ _HEAD = (
     "# A line marked <-- to be stated needs its value: take away the # in front of the key and write it.",
     "# A point is the decimal mark. Unknown keys are refused.",
 )
+_TABLES_OF_LAWS: Mapping[str, Mapping[str, LawRow[Any]]] = {
+    "forming.springback": SPRINGBACK_LAWS,
+    "forming.thinning": THINNING_LAWS,
+}
 _NO_TURNING = (
     "",
     "# Without a [turning] table no turning program is written.",
@@ -123,15 +129,16 @@ class Starter:
 
     def _of_law(self, key: str) -> State | None:
         table, _, name = key.rpartition(".")
-        keys = {"forming.springback": SPRINGBACK_KEYS, "forming.thinning": THINNING_KEYS}.get(table)
-        if keys is None or name == "law":
+        laws = _TABLES_OF_LAWS.get(table)
+        if laws is None or name == "law":
             return None
-        law = str(self.given.get(f"{table}.law"))
-        if name in SPRINGBACK_OPTIONS.get(law, ()):
+        row = laws.get(str(self.given.get(f"{table}.law")))
+        if row is None:
+            return "left out"
+        if name in row.options:
             return "written"
-        wanted = keys.get(law, ())
-        answered = any(f"{table}.{other}" in self.given for other in wanted)
-        return "to be stated" if name in wanted[:1] and not answered else "left out"
+        answered = any(f"{table}.{other}" in self.given for other in row.one_of)
+        return "to be stated" if name in row.one_of[:1] and not answered else "left out"
 
     def _of_material(self, key: str) -> State | None:
         if key == "forming.shrinkage.percent" and not self._metal():

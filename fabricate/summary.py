@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import asdict, dataclass
 from textwrap import wrap
 from typing import Any
@@ -13,6 +14,7 @@ from fabricate.make import MadePackage
 from fabricate.measures import Units
 from fabricate.notices import notices
 from fabricate.order import Order
+from fabricate.part_report import STATEMENT, UNIT_NAMES, forming_json, forming_rows, prediction_json, prediction_rows
 from fabricate.proof import Proof
 from fabricate.verdict import FileVerdict
 from profiles.best_parabola import best_parabola
@@ -22,7 +24,6 @@ MEANING = (
     "Proved means that the files match the mould curve of the stated model. What the part will be depends on the "
     "springback and the thickness that the job states: measure the first part."
 )
-UNIT_NAMES = {"mm": "mm", "inch": "in"}
 PLACES = {"male": "male mould (chuck)", "female": "female mould (cavity)"}
 
 
@@ -127,13 +128,16 @@ def summary_json(order: Order, made: MadePackage) -> dict[str, Any]:
     Returns
     -------
     dict
-        ``folder``, ``title``, ``units``, ``mould``, ``warnings`` and ``proof``.
+        ``folder``, ``title``, ``units``, ``mould``, ``forming``, ``predicted``, ``warnings`` and ``proof``; lengths of
+        ``mould`` and ``forming`` in the unit of the job.
     """
     return {
         "folder": str(made.folder),
         "title": order.job.title,
         "units": order.job.units,
         "mould": asdict(mould_figures(order)),
+        "forming": forming_json(order),
+        "predicted": prediction_json(order, made.parts),
         "warnings": list(notices(order)),
         "proof": made.proof.as_json(),
     }
@@ -158,7 +162,9 @@ def summary_text(order: Order, made: MadePackage) -> str:
     parts = (
         [head],
         _mould_lines(order),
+        _lines(forming_rows(order)),
         proof_lines(made.proof, order.job.units),
+        [*wrap(f"The part that these files lead to: {STATEMENT}.", WIDTH), *_lines(prediction_rows(order, made.parts))],
         _warning_lines(order),
         wrap(MEANING, WIDTH),
         [f"The package is in {made.folder}"],
@@ -215,6 +221,10 @@ def _mould_lines(order: Order) -> list[str]:
         ("arcs", f"{figures.arcs} (theory allows {figures.arcs_limit:.2f} for this chord error)"),
         ("solid", f"{figures.facets} triangles"),
     )
+    return _lines(rows)
+
+
+def _lines(rows: Iterable[tuple[str, str]]) -> list[str]:
     return [line for label, text in rows for line in _labelled(label, text)]
 
 

@@ -8,13 +8,13 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
+from typing import Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
-from fabricate.forming_keys import Thinning
+from fabricate.law_table import LawRow
 from fabricate.springback import arc_lengths_at, table_over_radius
-from profiles.errors import JobError
 from profiles.meridian import Meridian
 from profiles.series import Series, constant, merged_breaks, resolve
 
@@ -40,15 +40,30 @@ class FormedSheet:
     thickness: float
 
 
-Law = Callable[[FormedSheet, Thinning], Series]
+class ThinningTable(Protocol):
+    """What a law may read of the job's table ``[forming.thinning]``, lengths in millimetres.
+
+    The keys are those of `fabricate.forming_keys.Thinning`, where their units and meaning stand.
+    """
+
+    @property
+    def law(self) -> str:
+        """Name of the law."""
+
+    @property
+    def stations(self) -> tuple[tuple[float, float], ...] | None:
+        """Rows of radius on the finished face and thickness [mm]."""
 
 
-def no_thinning(sheet: FormedSheet, _stated: Thinning) -> Series:
+Law = Callable[[FormedSheet, ThinningTable], Series]
+
+
+def no_thinning(sheet: FormedSheet, _stated: ThinningTable) -> Series:
     """Return the sheet's own thickness everywhere [mm]: conventional spinning, to first order."""
     return constant(sheet.thickness, sheet.on_mould.start, sheet.on_mould.end)
 
 
-def sine_law(sheet: FormedSheet, _stated: Thinning) -> Series:
+def sine_law(sheet: FormedSheet, _stated: ThinningTable) -> Series:
     """Return ``t = t0 cos ψ`` [mm]: shear spinning, and a sheet draped while its free part stays a tangent cone.
 
     References
@@ -63,7 +78,7 @@ def sine_law(sheet: FormedSheet, _stated: Thinning) -> Series:
     return thickness
 
 
-def straight_vacuum(sheet: FormedSheet, _stated: Thinning) -> Series:
+def straight_vacuum(sheet: FormedSheet, _stated: ThinningTable) -> Series:
     """Return the thickness of a sheet drawn into a cavity from the rim inwards [mm].
 
     ``t = t0 (1 + cos ψ)/2 · exp(−∫ (1 − cos ψ)/r ds)``, the integral from the place to the end of the forming surface.
@@ -98,7 +113,7 @@ def straight_vacuum(sheet: FormedSheet, _stated: Thinning) -> Series:
     return thickness
 
 
-def stations(sheet: FormedSheet, stated: Thinning) -> Series:
+def stations(sheet: FormedSheet, stated: ThinningTable) -> Series:
     """Return a measured table of radius on the finished face and thickness [mm].
 
     PCHIP between its rows, constant beyond them. A table that reaches the axis with a slope is rounded off there, as
@@ -127,7 +142,7 @@ def _rounding_radius(table: Callable[[Array], Array], sheet: FormedSheet, radii:
     is left, but it never reaches past the table's first row.
     """
     step = 1e-6 * sheet.released.end
-    slope = abs(float(np.diff(table(np.array([0.0, step])))[0])) / step
+    slope = abs(float(table(step * np.arange(3.0)) @ np.array([-1.5, 2.0, -0.5]))) / step
     first_row = float(radii[radii > 0.0][0]) if (radii > 0.0).any() else 0.0
     return min(3.0 * slope / float(sheet.released.curvature(sheet.released.start)), first_row) if slope > 1e-9 else 0.0
 
@@ -140,24 +155,15 @@ def _kept_off_axis(radius: Array, within: float) -> Array:
     return np.asarray(np.sqrt(radius**2 + within**2 / 3.0 * lift))
 
 
-LAWS: Mapping[str, Law] = {
-    "none": no_thinning,
-    "sine-law": sine_law,
-    "straight-vacuum": straight_vacuum,
-    "stations": stations,
+LAWS: Mapping[str, LawRow[Law]] = {
+    "none": LawRow(no_thinning),
+    "sine-law": LawRow(sine_law),
+    "straight-vacuum": LawRow(straight_vacuum),
+    "stations": LawRow(stations, one_of=("stations",)),
 }
+"""Every law of thinning by the name that the job gives it."""
 
 
-def thickness_on_mould(sheet: FormedSheet, stated: Thinning) -> Series:
-    """Return the formed sheet's thickness over the arc length of the reflecting face on the mould [mm].
-
-    Raises
-    ------
-    JobError
-        If the law is not built in.
-    """
-    if stated.law not in LAWS:
-        raise JobError(
-            f'forming.thinning.law: value is "{stated.law}"; allowed: {", ".join(LAWS)}; do: state one of these'
-        )
-    return LAWS[stated.law](sheet, stated)
+def thickness_on_mould(sheet: FormedSheet, stated: ThinningTable) -> Series:
+    """Return the formed sheet's thickness over the arc length of the reflecting face on the mould [mm]."""
+    return LAWS[stated.law].make(sheet, stated)

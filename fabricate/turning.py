@@ -6,17 +6,19 @@ program whose replay finds a fault is refused: no program is better than a bad o
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
 
 import numpy as np
 
-from fabricate.contour import chorded_forming, contour_at
+from fabricate.contour import chorded, chorded_forming, contour_at
+from fabricate.contour_features import groove_cuts
 from fabricate.job_keys import Job
 from fabricate.mould import Mould
 from fabricate.passes import Passes
 from fabricate.program_header import STOP_TO_CHECK, header
 from fabricate.speeds import Limits, limits_of, spindle_speed, stepped
+from fabricate.turning_features import check_features, feature_notes
 from fabricate.turning_proof import TurningProof, prove_turning
 from fabricate.turning_setup import Setup, dialect_of
 from outputs.gcode import (
@@ -34,7 +36,7 @@ from outputs.gcode import (
     write_program,
 )
 from profiles.arcpath import ArcPath
-from profiles.arcs import fewest_arcs
+from profiles.arcs import ArcFit, fewest_arcs
 from profiles.errors import FormatError, GeometryError, JobError
 
 
@@ -57,7 +59,9 @@ class TurningPlan:
     proof: TurningProof
 
 
-def plan_turning(job: Job, mould: Mould, forming: ArcPath) -> TurningPlan:
+def plan_turning(
+    job: Job, mould: Mould, forming: ArcPath, *, part: str = "mould", fit: Callable[..., ArcFit] = fewest_arcs
+) -> TurningPlan:
     """Return the turning program of a mould, replayed.
 
     Parameters
@@ -69,6 +73,10 @@ def plan_turning(job: Job, mould: Mould, forming: ArcPath) -> TurningPlan:
     forming : ArcPath
         Arcs of the forming surface in the mould frame, from the axis or bore outwards [mm]. Where the digits of the
         program leave too little of the tolerance for them, closer ones are fitted.
+    part : str
+        What the program's header calls it.
+    fit : callable
+        Fits closer arcs to the forming surface, as `fewest_arcs` does.
 
     Returns
     -------
@@ -83,11 +91,12 @@ def plan_turning(job: Job, mould: Mould, forming: ArcPath) -> TurningPlan:
     """
     setup = Setup.of(job, mould)
     _check_nose(setup)
+    check_features(setup)
     _check_decimals(setup)
     limits = limits_of(job, setup)
-    plan = _planned(job, setup, limits, forming)
+    plan = _planned(job, setup, limits, forming, part)
     if plan.proof.out_of_tolerance and setup.turning.control.arcs != "lines":
-        plan = _planned(job, setup, limits, _closer(job, setup))
+        plan = _planned(job, setup, limits, _closer(job, setup, fit), part)
     if plan.proof.out_of_tolerance:
         found = "; ".join(text for _, text in plan.proof.findings)
         raise JobError(
@@ -103,7 +112,7 @@ def plan_turning(job: Job, mould: Mould, forming: ArcPath) -> TurningPlan:
     return plan
 
 
-def _planned(job: Job, setup: Setup, limits: Limits, forming: ArcPath) -> TurningPlan:
+def _planned(job: Job, setup: Setup, limits: Limits, forming: ArcPath, part: str) -> TurningPlan:
     """Return a program and its proof, which may still have found faults."""
     passes = _passes(job, setup, forming)
     dialect = dialect_of(job)
@@ -111,7 +120,7 @@ def _planned(job: Job, setup: Setup, limits: Limits, forming: ArcPath) -> Turnin
     lowest = min(block.height for part in cuts for block in part if isinstance(block, Rapid | Feed)) - setup.nose
     try:
         blocks = (
-            *header(job, setup, limits, lowest=lowest),
+            *header(job, setup, limits, lowest=lowest, part=part),
             *_to_control(_phase(job, setup, limits, limits.untrued, cuts[0]), setup),
             *_stop(limits),
             *_to_control(_phase(job, setup, limits, limits.trued, cuts[1]), setup),
@@ -126,29 +135,38 @@ def _planned(job: Job, setup: Setup, limits: Limits, forming: ArcPath) -> Turnin
 def _passes(job: Job, setup: Setup, forming: ArcPath) -> Passes:
     try:
         finished = contour_at(setup, forming, setup.nose)
-        roughed = contour_at(setup, forming, setup.nose + setup.allowance)
+        roughed = contour_at(setup, forming, setup.nose + setup.allowance, grooved=False)
+        grooves = _grooves(setup)
         if setup.turning.control.arcs == "lines":
             share = setup.chord_error - setup.digit
             chords = chorded_forming(setup, share, 0.9e-3 * job.tolerance.files.slope_mrad)
+            ungrooved = contour_at(setup, forming, setup.nose, grooved=False).chorded(0.5 * share).along(chords)
             finished = finished.chorded(0.5 * share).along(chords)
+            grooves = tuple(chorded(cut, max(0.1 * setup.allowance, 0.5 * share)) for cut in grooves)
             # Chords cut corners: where the allowance does not cover that, roughing runs where finishing will.
             covered = setup.allowance > 2.0 * setup.chord_error
-            roughed = roughed.chorded(0.1 * setup.allowance) if covered else finished
+            roughed = roughed.chorded(0.1 * setup.allowance) if covered else ungrooved
     except GeometryError as error:
         raise JobError(
             f"turning.nose_radius: value is {setup.text(setup.nose)} {job.units}, and the path of the nose "
             f"cannot be made: {error}; allowed: a nose, with its finish_allowance, that fits the mould; do: take a "
             "smaller nose radius"
         ) from error
-    return Passes(setup, roughed, finished)
+    return Passes(setup, roughed, finished, grooves)
 
 
-def _closer(job: Job, setup: Setup) -> ArcPath:
+def _grooves(setup: Setup) -> tuple[ArcPath, ...]:
+    """Return the cuts that rough the groove of a lead-out; none where there is none."""
+    lead = setup.mould.lead
+    return () if lead is None else groove_cuts(lead, setup.nose, setup.allowance, setup.turning.depth_of_cut)
+
+
+def _closer(job: Job, setup: Setup, fit: Callable[..., ArcFit]) -> ArcPath:
     """Return arcs that keep the tolerances after rounding, and at the end, where a lean shifts the nose along."""
     share = setup.chord_error - setup.digit
     lean = 0.98e-3 * job.tolerance.files.slope_mrad or np.inf
     slope = min(lean, 0.5 * share / setup.nose)
-    return fewest_arcs(setup.mould.curve, distance=0.8 * share, slope=slope).path
+    return fit(setup.mould.curve, distance=0.8 * share, slope=slope).path
 
 
 def _phase(job: Job, setup: Setup, limits: Limits, limit: float, cuts: tuple[Block, ...]) -> Iterator[Block]:
@@ -204,8 +222,9 @@ def _check_decimals(setup: Setup) -> None:
 def _check_nose(setup: Setup) -> None:
     """Refuse a nose that does not fit into the tightest hollow of the mould."""
     hollows = [(setup.nose + setup.allowance, "with finish_allowance ", _forming_hollow(setup))]
-    rim = setup.mould.rim
-    if setup.male and rim is not None and setup.end_slope > 1e-9:
+    rim = setup.mould.edge_and_land
+    # The edge of a male mould is a hollow, that of a plug is round and none.
+    if setup.male and rim is not None and setup.end_slope > 1e-9 and rim.bulges[0] >= 0.0:
         hollows.append((setup.nose, "", setup.mould.edge_radius))
     for size, what, hollow in hollows:
         if size >= hollow * (1.0 - 1e-9):
@@ -239,4 +258,5 @@ def _notes(setup: Setup, limits: Limits) -> tuple[str, ...]:
     ]
     if setup.mould.bore_radius:
         notes.append("the stock is turned solid to the axis: the bore is made elsewhere")
+    notes += feature_notes(setup)
     return tuple(note for note in notes if note)

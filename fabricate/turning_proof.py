@@ -17,7 +17,7 @@ import numpy as np
 from fabricate.contour import nose_curve
 from fabricate.job_keys import Job
 from fabricate.mould import Mould
-from fabricate.passes import EDGING, FACING, FINISHING, ROUGHING, SECTIONS, TRUING
+from fabricate.passes import EDGING, FACING, FINISHING, HUB, ROUGHING, SECTIONS, TRIM_LINE, TRUING
 from fabricate.removal import Finding, Removal, replay_removal
 from fabricate.speeds import Limits, limits_of, spindle_speed
 from fabricate.spindle_proof import spindle_findings
@@ -25,6 +25,7 @@ from fabricate.turning_keys import Turning
 from fabricate.turning_setup import Setup, dialect_of
 from outputs.gcode import FEED_DECIMALS
 from outputs.gcode_reader import Move, Replay, read_program
+from profiles.arcpath import ArcPath
 from profiles.deviation import Deviation, deviation
 from profiles.errors import FormatError
 
@@ -103,6 +104,7 @@ def prove_turning(text: str, job: Job, mould: Mould) -> TurningProof:
         return TurningProof((("unreadable", str(error)),))
     spindle = spindle_findings(text, given.limits, stop_after=_end_of_facing(replay))
     findings = [*_stop_findings(text, replay, setup), *spindle, *_move_findings(text, replay, given)]
+    findings += _trim_line_findings(replay, setup)
     found, measured = None, []
     try:
         found = _measured(replay, given)
@@ -116,9 +118,7 @@ def prove_turning(text: str, job: Job, mould: Mould) -> TurningProof:
 def _measured(replay: Replay, given: _Given) -> Deviation:
     """Return the deviation of the finished surface from the mould curve."""
     setup, exact = given.setup, nose_curve(given.setup)
-    across, along = setup.control_shift
-    path = replay.section(FINISHING).scaled(given.setup.unit).moved(across=-across, along=-along)
-    found = deviation(exact, setup.mould.from_lathe(path))
+    found = deviation(exact, _finish(replay, setup))
     side = -setup.nose if setup.male else setup.nose
 
     def on_mould(radius: float) -> float:
@@ -127,6 +127,41 @@ def _measured(replay: Replay, given: _Given) -> Deviation:
         return radius + side * float(np.sin(exact.slope(exact.at_radius(radius))))
 
     return replace(found, at_radius=on_mould(found.at_radius), slope_at_radius=on_mould(found.slope_at_radius))
+
+
+def _finish(replay: Replay, setup: Setup) -> ArcPath:
+    """Return the path of the nose centre along the forming surface, in the mould frame [mm]."""
+    across, along = setup.control_shift
+    path = replay.section(FINISHING).scaled(setup.unit).moved(across=-across, along=-along)
+    return setup.mould.from_lathe(path)
+
+
+def finish_path(text: str, job: Job, mould: Mould) -> tuple[ArcPath, float]:
+    """Return where the nose centre runs along the forming surface, and how far above it that is meant to be.
+
+    Parameters
+    ----------
+    text : str
+        The program as it stands in the file.
+    job : Job
+        The job, in its own units, with a ``[turning]`` table.
+    mould : Mould
+        Its mould [mm].
+
+    Returns
+    -------
+    path : ArcPath
+        In the mould frame [mm].
+    clearance : float
+        The nose radius, positive on the left of the forming surface [mm].
+
+    Raises
+    ------
+    FormatError
+        If the program cannot be read or has no finishing pass.
+    """
+    setup = Setup.of(job, mould)
+    return _finish(read_program(text, dialect_of(job)), setup), -setup.nose if setup.male else setup.nose
 
 
 def _tolerance_findings(found: Deviation, given: _Given) -> Iterator[Finding]:
@@ -148,7 +183,8 @@ def _tolerance_findings(found: Deviation, given: _Given) -> Iterator[Finding]:
 def _stop_findings(text: str, replay: Replay, setup: Setup) -> Iterator[Finding]:
     """Yield what is wrong with the sections and with the stop between untrued and trued stock."""
     names = [section.name for section in replay.sections]
-    for name in SECTIONS:
+    hub, line = setup.mould.hub, setup.mould.trim_line
+    for name in (*SECTIONS, *((HUB,) if hub is not None else ()), *((TRIM_LINE,) if line is not None else ())):
         if names.count(name) != 1 and (name != TRUING or setup.male) and name != FINISHING:
             yield "no-section", f"the program has {names.count(name)} sections ({name}) to (END {name}), not one"
     faced = _end_of_facing(replay)
@@ -156,6 +192,18 @@ def _stop_findings(text: str, replay: Replay, setup: Setup) -> Iterator[Finding]
     stops = [line.strip() for line in text.split("\n")[faced : max(faced, rough - 1)]]
     if faced and "M0" not in stops:
         yield "no-stop", "nothing stops the program before the limit rises, to check that the stock runs true"
+
+
+def _trim_line_findings(replay: Replay, setup: Setup) -> Iterator[Finding]:
+    """Yield a finding where the trim line is scribed at another place, or to another depth, than the mould's."""
+    line, shift = setup.mould.trim_line, np.array(setup.control_shift)
+    if line is None:
+        return
+    moves = (move for move in replay.moves if move.section == TRIM_LINE and move.kind == "feed")
+    places = [setup.unit * np.array(move.end) - shift for move in moves]
+    off = min((float(np.hypot(*(place - line.centre(setup.nose)))) for place in places), default=np.inf)
+    if off > setup.chord_error:
+        yield "trim-line", f"the trim line is scribed {off:.4f} mm off its place and depth, if at all"
 
 
 def _end_of_facing(replay: Replay) -> int:
@@ -204,7 +252,7 @@ def _fastest(move: Move, given: _Given) -> float:
 def _feed_problems(move: Move, given: _Given) -> Iterator[Finding]:
     turning = given.turning
     finishing, roughing = (round(feed, FEED_DECIMALS) for feed in (turning.finishing_feed, turning.roughing_feed))
-    allowed = {finishing} if move.section in {FINISHING, EDGING} else {finishing, roughing}
+    allowed = {finishing} if move.section in {HUB, FINISHING, EDGING, TRIM_LINE} else {finishing, roughing}
     if move.feed not in allowed:
         yield (
             "feed",

@@ -126,8 +126,7 @@ class Setup:
     def stock(self) -> Stock:
         """The cylinder that is in the lathe at the start."""
         extra = self.turning.stock_allowance
-        front = extra + (0.0 if self.male else self.mould.land)
-        return Stock(self.mould.outer_radius + extra, front, self.mould.lowest)
+        return Stock(self.mould.widest + extra, extra + self.mould.top, self.mould.lowest)
 
     @property
     def reach(self) -> float:
@@ -137,8 +136,8 @@ class Setup:
 
     @cached_property
     def core(self) -> ArcPath | None:
-        """The arc, level on the axis, that carries the forming surface on under a bore; None without a bore."""
-        if not self.mould.bore_radius:
+        """The arc, level on the axis, that carries the forming surface on under a bore; None without, or with a hub."""
+        if self.mould.hub is not None or not self.mould.bore_radius:
             return None
         radius, height = self.mould.back.vertices[-1]
         slope = float(self.mould.curve.slope(self.mould.curve.start)) * (-1.0 if self.male else 1.0)
@@ -147,7 +146,9 @@ class Setup:
 
     @property
     def vertex(self) -> float:
-        """Z at which the forming surface, or what carries it on under a bore, meets the axis [mm]."""
+        """Z at which the forming surface, a hub, or what carries it on under a bore, meets the axis [mm]."""
+        if self.mould.hub is not None:
+            return float(self.mould.hub.vertices[0, 1])
         if self.core is not None:
             return float(self.core.vertices[0, 1])
         return 0.0 if self.male else -self.mould.land_height

@@ -11,6 +11,7 @@ __all__ = [
     "gcode_words",
     "package",
     "plain_text",
+    "readings",
     "stl",
     "svg",
     "svg_items",

@@ -19,7 +19,7 @@ from __future__ import annotations
 import os
 import secrets
 import shutil
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Collection, Iterator
 from contextlib import ExitStack, contextmanager, suppress
 from pathlib import Path
 
@@ -35,6 +35,7 @@ def staged(
     replace: bool,
     same_package: Callable[[Path], bool],
     expendable: Callable[[Path], bool] = lambda _: True,
+    names: Collection[str] = (),
 ) -> Iterator[Path]:
     """Lend a fresh folder to write into, and move it to its place when all went well.
 
@@ -48,6 +49,8 @@ def staged(
         Tells of a folder that is not empty whether it may be rewritten without ``replace``.
     expendable : callable
         Tells of an older FOLDER.previous that holds a package whether it may be removed.
+    names : collection of str
+        Names that a package's files may have besides those of this one.
 
     Yields
     ------
@@ -72,7 +75,7 @@ def staged(
             undo.callback(shutil.rmtree, stage, ignore_errors=True)
             yield stage
             if taken:
-                _exchange(stage, place, replace=replace, expendable=expendable)
+                _exchange(stage, place, replace=replace, expendable=expendable, names=names)
             else:
                 _move_in(stage, place)
         except OSError as error:
@@ -158,11 +161,11 @@ def _check_previous(previous: Path) -> None:
         )
 
 
-def _check_previous_is_package(previous: Path, stage: Path) -> None:
+def _check_previous_is_package(previous: Path, stage: Path, names: Collection[str]) -> None:
     """Refuse to remove an older FOLDER.previous that holds more than files of a package's names."""
-    names = {entry.name for entry in stage.iterdir()}
+    known = {*names, *(entry.name for entry in stage.iterdir())}
     for entry in sorted(previous.iterdir()):
-        if entry.name not in names or entry.is_symlink() or not entry.is_file():
+        if entry.name not in known or entry.is_symlink() or not entry.is_file():
             raise WriteError(
                 f"{previous}: holds {entry.name}, which is no part of a package and would be lost; allowed: no such "
                 f"folder, or an older package; do: move it away"
@@ -178,14 +181,16 @@ def _check_expendable(previous: Path, expendable: Callable[[Path], bool]) -> Non
         )
 
 
-def _exchange(stage: Path, place: Path, *, replace: bool, expendable: Callable[[Path], bool]) -> None:
+def _exchange(
+    stage: Path, place: Path, *, replace: bool, expendable: Callable[[Path], bool], names: Collection[str]
+) -> None:
     """Put the finished package in the place of what stands there, or undo all of it."""
     outdated = _sibling(place)
     with ExitStack() as undo:
         if replace:
             previous = _previous(place)
             if previous.is_dir():
-                _check_previous_is_package(previous, stage)
+                _check_previous_is_package(previous, stage, names)
                 _check_expendable(previous, expendable)
                 _rename(previous, outdated, undo)
             _rename(place, previous, undo)

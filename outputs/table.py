@@ -22,7 +22,7 @@ from pathlib import Path
 from outputs.package import write_file
 from profiles.errors import FormatError
 
-__all__ = ["Column", "aligned_text", "read_table", "table_text", "write_table"]
+__all__ = ["Column", "aligned_text", "read_table", "table_columns", "table_lines", "table_text", "write_table"]
 
 MOST_DECIMALS = 15
 
@@ -158,7 +158,30 @@ def read_table(path: Path) -> Mapping[str, tuple[str, ...]]:
         If the file is missing, is no text, has no header or the same name twice in it, or a row has more or fewer
         cells than the header.
     """
-    rows = _numbered_rows(path)
+    return table_columns(path, table_lines(path))
+
+
+def table_columns(path: Path, lines: Sequence[str]) -> Mapping[str, tuple[str, ...]]:
+    """Return the columns that the lines of a CSV file hold, as `read_table` does.
+
+    Parameters
+    ----------
+    path : Path
+        The file, for messages.
+    lines : sequence of str
+        Its lines, with their ends.
+
+    Returns
+    -------
+    mapping of str to tuple of str
+        For each name in the header its cells from the top, blanks around them taken off.
+
+    Raises
+    ------
+    FormatError
+        If there is no header or the same name twice in it, or a row has more or fewer cells than the header.
+    """
+    rows = _numbered_rows(path, lines)
     names = next(rows, (0, [""]))[1]
     if not any(names):
         raise FormatError(f"{path}: has no header row; allowed: CSV that names its columns first; do: add their names")
@@ -172,6 +195,39 @@ def read_table(path: Path) -> Mapping[str, tuple[str, ...]]:
             )
         cells.append(row)
     return {name: tuple(row[index] for row in cells) for index, name in enumerate(names)}
+
+
+def table_lines(path: Path) -> list[str]:
+    """Return the lines of a table's file.
+
+    Parameters
+    ----------
+    path : Path
+        The file: UTF-8, with or without a byte order mark, or the code page of older spreadsheets.
+
+    Returns
+    -------
+    list of str
+        Its lines, with their ends.
+
+    Raises
+    ------
+    FormatError
+        If the file is missing or is no text.
+    """
+    try:
+        content = path.read_bytes()
+    except OSError as error:
+        raise FormatError(
+            f"{path}: cannot be read ({error.strerror}); allowed: a CSV file; do: check the name and who may read it"
+        ) from error
+    if b"\0" in content:
+        raise FormatError(f"{path}: is no plain text; allowed: CSV in UTF-8; do: save it as CSV")
+    try:
+        text = content.decode("utf-8-sig")
+    except UnicodeDecodeError:
+        text = content.decode("cp1252", errors="replace")  # older spreadsheets; only remarks hold more than ASCII
+    return list(io.StringIO(text, newline=""))
 
 
 def aligned_text(columns: Sequence[Column]) -> str:
@@ -241,9 +297,9 @@ def _as_meant(cell: str) -> str:
     return plain[1:] if _QUOTED.match(plain) else plain
 
 
-def _numbered_rows(path: Path) -> Iterator[tuple[int, list[str]]]:
+def _numbered_rows(path: Path, lines: Iterable[str]) -> Iterator[tuple[int, list[str]]]:
     """Yield the rows that say anything, each with the number of its last line."""
-    reader = csv.reader(_without_comments(_lines(path)), strict=True)
+    reader = csv.reader(_without_comments(lines), strict=True)
     try:
         for row in reader:
             cells = [_as_meant(cell) for cell in row]
@@ -253,23 +309,6 @@ def _numbered_rows(path: Path) -> Iterator[tuple[int, list[str]]]:
         raise FormatError(
             f"{path}: line {reader.line_num}: {error}; allowed: CSV; do: check the quotation marks of that line"
         ) from error
-
-
-def _lines(path: Path) -> list[str]:
-    """Return the lines of a text file, with their ends."""
-    try:
-        content = path.read_bytes()
-    except OSError as error:
-        raise FormatError(
-            f"{path}: cannot be read ({error.strerror}); allowed: a CSV file; do: check the name and who may read it"
-        ) from error
-    if b"\0" in content:
-        raise FormatError(f"{path}: is no plain text; allowed: CSV in UTF-8; do: save it as CSV")
-    try:
-        text = content.decode("utf-8-sig")
-    except UnicodeDecodeError:
-        text = content.decode("cp1252", errors="replace")  # older spreadsheets; only remarks hold more than ASCII
-    return list(io.StringIO(text, newline=""))
 
 
 def _without_comments(lines: Iterable[str]) -> Iterator[str]:

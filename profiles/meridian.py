@@ -211,7 +211,7 @@ class Meridian:
         (rate,) = resolve(lambda where: speed(where)[None], breaks, sizes=[1.0])
         return _by_arc_length(values, rate.integral(value=self.start))
 
-    def offset_source(self, distance: Series) -> tuple[Meridian, Series]:
+    def offset_back(self, distance: Series) -> tuple[Meridian, Series]:
         """Return the curve of which this one is the offset.
 
         Parameters

@@ -1,20 +1,23 @@
 """The proof of a solid's mesh: read-back facets against the exact half section, by bounds and not by samples.
 
-Each facet is measured against the stretch of the half section that its corners lie on. If the facets are one closed
-surface, all within tolerance of the exact one and facing the same way as it, and enclose its volume, then they cover it
-exactly once: projecting them along its normals is a map of degree one.
+Each facet is measured against the stretch of the half section that its corners lie on, or against the drilled hole
+(:mod:`profiles.hole_deviation`). If the facets are one closed surface, all within tolerance of the exact one and facing
+the same way as it, and enclose its volume, then they cover it exactly once: projecting them along its normals is a map
+of degree one.
 
 Every check collects what it finds; a finding is a stable code and a sentence.
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
+from profiles.drilling import DrilledSolid
 from profiles.facets import facet_spans, least, longest_sides, most
+from profiles.hole_deviation import HoleFacets, hole_facets, without_holes
 from profiles.mesh_topology import Finding, Topology, facet_normals, topology
 from profiles.solids import Solid
 from profiles.surfaces import Contact, Surface, TurnedCurve, stretches
@@ -41,7 +44,7 @@ class MeshDeviation:
     slope_at_radius : float
         Radius of that corner [mm].
     body : float
-        Largest normal distance of the other facets: edge, land, sides, base, spigot, bore [mm].
+        Largest normal distance of the other facets: edge, land, sides, base, spigot, bore, holes [mm].
     body_at_radius : float
         Radius of that facet's middle [mm].
     volume : float
@@ -73,12 +76,12 @@ class _Facets:
     facing: Array
 
 
-def mesh_deviation(solid: Solid, corners: Array, normals: Array, *, chord_error: float) -> MeshDeviation:
+def mesh_deviation(solid: Solid | DrilledSolid, corners: Array, normals: Array, *, chord_error: float) -> MeshDeviation:
     """Return how far read-back facets stray from the exact solid, and everything that is wrong with them.
 
     Parameters
     ----------
-    solid : Solid
+    solid : Solid or DrilledSolid
         The exact solid [mm].
     corners : ndarray of shape (m, 3, 3)
         Three corners of each facet as they stand in the file [mm].
@@ -90,8 +93,8 @@ def mesh_deviation(solid: Solid, corners: Array, normals: Array, *, chord_error:
     Returns
     -------
     MeshDeviation
-        Its findings are those of `topology`, and ``numbers``, ``forming``, ``body``, ``facing``, ``coverage`` and
-        ``volume``.
+        Its findings are those of `topology`, and ``numbers``, ``forming``, ``body``, ``hole``, ``facing``,
+        ``coverage`` and ``volume``.
 
     Notes
     -----
@@ -103,8 +106,9 @@ def mesh_deviation(solid: Solid, corners: Array, normals: Array, *, chord_error:
         sentence = f"{len(corners)} facets, {wrong} of them with a number that is not finite; allowed: 4 or more, none"
         return MeshDeviation(np.inf, 0.0, np.inf, 0.0, np.inf, 0.0, 0.0, 0, (("numbers", sentence),))
     whole = topology(corners, normals)
-    surfaces = stretches(solid)
-    facets = _measured(surfaces, whole, corners, chord_error)
+    drilled = solid if isinstance(solid, DrilledSolid) else DrilledSolid(solid)
+    holes = hole_facets(drilled, whole, corners, chord_error=chord_error)
+    facets = _all_measured(stretches(drilled.turned), whole, corners, holes, chord_error)
     radii = np.hypot(*(corners[:, 0, :2] + corners[:, 1, :2] + corners[:, 2, :2]).T) / 3.0
     forming = facets.owners == 0
     normal, at_radius = _worst(facets.strayed, radii, forming)
@@ -116,8 +120,9 @@ def mesh_deviation(solid: Solid, corners: Array, normals: Array, *, chord_error:
         *whole.findings,
         *_strayed("forming", "the forming surface", (normal, at_radius), chord_error),
         *_strayed("body", "the rest of the solid", (body, body_at_radius), chord_error),
+        *holes.findings,
         *_turned_away(facets, radii),
-        *_coverage(solid, whole, facets.owners, chord_error),
+        *_coverage(drilled.turned, without_holes(whole, holes.holes >= 0), facets.owners, chord_error),
         *_volume(solid, whole.volume, chord_error),
     ]
     return MeshDeviation(
@@ -133,6 +138,22 @@ def mesh_deviation(solid: Solid, corners: Array, normals: Array, *, chord_error:
     )
 
 
+def _all_measured(
+    surfaces: tuple[TurnedCurve, *tuple[Surface, ...]],
+    whole: Topology,
+    corners: Array,
+    holes: HoleFacets,
+    chord_error: float,
+) -> _Facets:
+    """Return all facets measured, those of holes as numbered after the stretches."""
+    turned = np.flatnonzero(holes.holes < 0)
+    part = _measured(surfaces, replace(whole, triangles=whole.triangles[turned]), corners[turned], chord_error)
+    owners, lean = len(surfaces) + holes.holes, np.zeros((len(corners), 3))
+    strayed, facing = holes.strayed.copy(), holes.facing.copy()
+    owners[turned], strayed[turned], lean[turned], facing[turned] = part.owners, part.strayed, part.lean, part.facing
+    return _Facets(owners, strayed, lean, facing)
+
+
 def _measured(
     surfaces: tuple[TurnedCurve, *tuple[Surface, ...]], whole: Topology, corners: Array, chord_error: float
 ) -> _Facets:
@@ -141,7 +162,8 @@ def _measured(
     feet, curve = contacts[0].where[whole.triangles], surfaces[0].curve
     # A facet of the edge or of a bore touches the forming surface with corners on its last or first ring alone.
     apart[0, least(feet) >= curve.end - 0.5 * chord_error] = np.inf
-    apart[0, most(feet) <= curve.start + 0.5 * chord_error] = np.inf
+    if not curve.on_axis:
+        apart[0, most(feet) <= curve.start + 0.5 * chord_error] = np.inf
     owners = np.argmin(apart, axis=0)
     near = apart <= apart.min(axis=0) + 2.0 * chord_error
     several = near.sum(axis=0) > 1
@@ -251,7 +273,7 @@ def _coverage(solid: Solid, whole: Topology, owners: Rows, chord_error: float) -
     ]
 
 
-def _volume(solid: Solid, found: float, chord_error: float) -> list[Finding]:
+def _volume(solid: Solid | DrilledSolid, found: float, chord_error: float) -> list[Finding]:
     allowed = chord_error * solid.area
     if abs(found - solid.volume) <= allowed:
         return []

@@ -43,6 +43,9 @@ CORNER_SHARE = 0.15
 MOST_TRIANGLES = 4_000_000
 ROUNDS = 10
 
+BODY_SHARES = (1.0, 0.85, 0.7, 0.5)
+"""Parts of its spread that the rest may take, tried in turn where a larger one is not kept."""
+
 
 @dataclass(frozen=True, eq=False)
 class Mesh:
@@ -125,26 +128,41 @@ def revolve(solid: Solid, *, chord_error: float, facets: Facets = "balanced") ->
     """
     surfaces, room = _told_apart(solid, chord_error)
     _check_number(triangle_limit(solid.curve, chord_error=room, facets=facets), chord_error)
+    for share in BODY_SHARES:
+        found = _settled(surfaces, room, share, facets)
+        if found is not None:
+            return _mesh(solid, *found, chord_error)
+    raise GeometryError(
+        f"no mesh was found that keeps a chord error of {chord_error:g} mm on this half section; allowed: stretches "
+        "that are long against the chord error; do: allow a larger chord error, or change the smallest radius or land"
+    )
+
+
+def _settled(
+    surfaces: tuple[TurnedCurve, *tuple[TurnedArc, ...]], room: float, share: float, facets: Facets
+) -> tuple[Chain, Array] | None:
+    """Return rings, and their points where the facets are wanted, that keep a deviation [mm]; None if none do."""
     forming, ease, body = 1.0, EASE, _shares_at_corners(surfaces)
+    before = np.zeros(0)
     for _ in range(ROUNDS):
         chain = chain_rings(
             surfaces,
             forming_spread=room * forming * (2.0 if facets == "balanced" else 1.0),
             ease=ease,
-            body_spread=2.0 * room,
+            body_spread=2.0 * room * share,
             shares=body,
         )
         points, excess = _displaced(chain, facets, room)
         if excess.max() <= 1.0:
-            return _mesh(solid, chain, points, chord_error)
+            return chain, points
+        if np.array_equal(excess, before):
+            return None
+        before = excess
         forming *= min(1.0, 0.998 / excess[0])
         # At the joint the edge takes over the forming surface's shift: what is too much there comes from both.
         ease = max(ease * min(1.0, 0.97 / max(excess[1], 0.5)), 0.6)
         body = np.where(excess[1:] > 1.0, np.minimum(0.93, 0.98 / np.maximum(excess[1:], 0.5)) * body, body)
-    raise GeometryError(
-        f"no mesh was found that keeps a chord error of {chord_error:g} mm on this half section; allowed: stretches "
-        "that are long against the chord error; do: allow a larger chord error, or change the smallest radius or land"
-    )
+    return None
 
 
 def _shares_at_corners(surfaces: tuple[TurnedCurve, *tuple[TurnedArc, ...]]) -> Array:
@@ -262,7 +280,8 @@ def _shift(wanted: list[tuple[Array, float]]) -> Array:
 def _mesh(solid: Solid, chain: Chain, points: Array, chord_error: float) -> Mesh:
     """Return the mesh of a chain, its vertices rounded to single precision."""
     strips = chain.rings.strips()
-    triangles = np.concatenate(strips)
+    # The forming surface comes first, whatever lies inside it.
+    triangles = np.concatenate([strips[number] for number in np.argsort(chain.owners != 0, kind="stable")])
     _check_number(len(triangles), chord_error)
     # What rounding alone sets off a plane or the axis lies on it: a thousandth of what single precision tells apart.
     nothing = 1e-3 * float(np.spacing(np.float32(solid.size)))

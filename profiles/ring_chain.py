@@ -80,7 +80,8 @@ def chain_rings(
     Returns
     -------
     Chain
-        Ends in a pole, or in the ring where it began on a bored solid.
+        Ends in a pole, or in the ring where it began on a bored solid. It begins with the forming surface, or with the
+        pole of a pad on the axis that the forming surface surrounds.
 
     Raises
     ------
@@ -91,8 +92,8 @@ def chain_rings(
     bored = float(forming.curve.radius(forming.curve.start)) > 1e-9 * float(forming.curve.radius(forming.curve.end))
     # An arc's share goes into lower strips; a cylinder has nothing but its count.
     needs = [
-        _need(part, body_spread * (1.0 if part.curvature else share))
-        for part, share in zip(body, shares.tolist(), strict=True)
+        _need(part, body_spread * (1.0 if part.curvature else share), joined=number == 0)
+        for number, (part, share) in enumerate(zip(body, shares.tolist(), strict=True))
     ]
     tangent = _tangent(forming, body[0])
     row = forming_rings(
@@ -106,13 +107,35 @@ def chain_rings(
     if not bored:
         parts[0].points[0, 0] = 0.0
     last = parts[0].counts[0] if bored else 1
+    pole = _stretches_to_pole(body)
     for number, part in enumerate(body):
-        joint = _joint_count(body, needs, number, last)
+        if number == pole:
+            parts.append(_Stretch(np.array([[0.0, part.ends[0][1]]]), [1]))
+        joint = 1 if number + 1 == pole else _joint_count(body, needs, number, last)
         split = number == 0 and tangent
         parts.append(
             _stretch(part, (parts[-1].counts[-1], needs[number], joint), body_spread * float(shares[number]), split)
         )
-    return _joined(surfaces, parts, bored)
+    return _from_pad(surfaces, parts, pole) if pole < len(body) and bored else _joined(surfaces, parts, bored)
+
+
+def _stretches_to_pole(body: list[TurnedArc]) -> int:
+    """Return how many stretches of the rest come before the axis: all of them where it is not met, or last of all."""
+    radii = [float(part.ends[1][0]) for part in body]
+    return next((number + 1 for number, radius in enumerate(radii) if radius <= 1e-9 * max(radii)), len(body))
+
+
+def _from_pad(surfaces: tuple[Surface, ...], parts: list[_Stretch], pole: int) -> Chain:
+    """Return the chain of a solid with a pad on the axis: pole, pad, forming surface, and the rest down to the axis."""
+    outer, pad = _joined(surfaces, parts[: pole + 1], bored=False), parts[pole + 1 :]
+    points = np.concatenate([part.points for part in pad])[:-1]
+    counts = [count for part in pad for count in part.counts]
+    rings = Rings(
+        np.concatenate([counts[:-1], outer.rings.counts]),
+        np.concatenate([np.zeros(len(counts) - 1, dtype=np.int64), outer.rings.turned]),
+    )
+    owners = np.repeat(np.arange(pole + 1, pole + len(pad)), [len(part.counts) for part in pad[1:]])
+    return Chain(surfaces, rings, np.concatenate([points, outer.points]), np.concatenate([owners, outer.owners]))
 
 
 def _joined(surfaces: tuple[Surface, ...], parts: list[_Stretch], bored: bool) -> Chain:  # noqa: FBT001
@@ -147,14 +170,16 @@ def _is_plane(part: TurnedArc) -> bool:
     return not part.curvature and max(abs(float(normal[0])) for normal in part.normals) < 1e-9
 
 
-def _need(part: TurnedArc, spread: float) -> int:
-    """Return the least count of a stretch's rings."""
+def _need(part: TurnedArc, spread: float, *, joined: bool) -> int:
+    """Return the least count of a stretch's rings; one that is joined to the forming surface asks for no more."""
     radius, width = max(float(end[0]) for end in part.ends), abs(float(part.ends[1][0] - part.ends[0][0]))
     across = 1.0 if part.curvature else abs(float(part.normals[0][0]))
     # Chords may not reach far across a narrow stretch beside them.
     beside = _chords(radius, max(0.98 * spread, 0.3 * width))
     if part.curvature:
-        return max(LEAST_COUNT, beside, ceil(_circle(part) / (1.95 * sqrt(2.0 * spread))))
+        # The fewest triangles have sides of sqrt(2) circumradii on a saddle, and strips as high, else of sqrt(3).
+        side = 1.95 if joined else sqrt(2.0) if _is_saddle(part) else sqrt(3.0)
+        return max(LEAST_COUNT, beside, ceil(_circle(part) / (side * sqrt(2.0 * spread))))
     return max(LEAST_COUNT, beside, _chords(radius, 0.98 * spread / max(across, 1e-12)))
 
 
@@ -198,14 +223,17 @@ def _stretch(part: TurnedArc, counts: tuple[int, int, int], spread: float, split
     return _Stretch(part.path.along(part.number, shares), [inside] * (len(shares) - 1) + [ends])
 
 
+def _is_saddle(part: TurnedArc) -> bool:
+    """Say whether an arc's bend, towards the axis' side, and the circle around it bend against each other."""
+    return part.curvature * float(part.normals[0][0] + part.normals[1][0]) > 0.0
+
+
 def _arc_shares(part: TurnedArc, count: int, spread: float, *, split: bool) -> Array:
     """Return where on an arc its rings lie after the first, as shares of its length."""
     radius = sqrt(2.0 * spread)
     side = min(_circle(part) / count, 1.9 * radius)
-    # A bend towards the axis' side and a circle around it bend against each other.
-    saddle = part.curvature * float(part.normals[0][0] + part.normals[1][0]) > 0.0
     # On a saddle the deviations to both sides add up: of the side, and of the strip's height.
-    room = 4.0 * radius**2 - side**2 if saddle else (radius + sqrt(radius**2 - 0.25 * side**2)) ** 2
+    room = 4.0 * radius**2 - side**2 if _is_saddle(part) else (radius + sqrt(radius**2 - 0.25 * side**2)) ** 2
     bend = abs(part.curvature)
     strips = max(1, ceil(abs(float(part.path.turns[part.number])) / sqrt(bend * max(room, 0.25 * radius**2))))
     shares = np.arange(1, strips + 1) / strips

@@ -217,6 +217,31 @@ def test_a_gauge_with_its_system_gives_the_thickness() -> None:
     assert inch.sheet.thickness * 25.4 == pytest.approx(job.sheet.thickness, rel=1e-11)
 
 
+@pytest.mark.parametrize("gauge", ["16", '"16"'])
+@pytest.mark.parametrize("units", ["mm", "inch"])
+def test_a_weight_of_copper_gives_the_thickness(gauge: str, units: str) -> None:
+    text = edited(
+        "terrace-heater",
+        ("aluminium 1085-O", "copper C11000-O"),
+        ("thickness = 1.0", f'gauge = {gauge}\ngauge_system = "oz/ft2"'),
+        ('units = "mm"', f'units = "{units}"'),
+    )
+    text = text[: text.index("[turning]")]
+    inches = parse_job(text, name="copper.toml").sheet.thickness / (25.4 if units == "mm" else 1.0)
+    assert inches == pytest.approx(0.0216, abs=0.5e-4)
+
+
+def test_a_weight_of_a_sheet_that_the_table_lacks_is_the_shop_s_own_matter() -> None:
+    properties = "youngs_modulus_mpa = 116e3\npoisson = 0.34\nyield_mpa = 70\ndensity_kg_m3 = 8900\n"
+    text = edited(
+        "terrace-heater",
+        ("aluminium 1085-O", "yard copper"),
+        ("thickness = 1.0", 'gauge = 20\ngauge_system = "oz/ft2"'),
+        ("[forming]", f"[sheet.properties]\n{properties}[forming]"),
+    )
+    assert parse_job(text, name="copper.toml").sheet.thickness == pytest.approx(0.685, abs=1e-3)
+
+
 def test_a_sheet_of_its_own_has_the_properties_that_the_job_states() -> None:
     properties = "youngs_modulus_mpa = 70e3\npoisson = 0.33\nyield_mpa = 40\ndensity_kg_m3 = 2700\n"
     text = edited(

@@ -76,6 +76,9 @@ REFUSED = {
     "system without gauge": (HEATER, T1, f'{T1}\ngauge_system = "AWG"', "sheet.gauge: value is missing"),
     "system unknown": (HEATER, T1, 'gauge = 18\ngauge_system = "XYZ"', 'sheet.gauge_system: value is "XYZ"; allowed: AWG'),
     "gauge unknown": (HEATER, T1, 'gauge = 77\ngauge_system = "SWG"', "sheet.gauge: value is 77; allowed: the numbers of SWG"),
+    "gauge a fraction": (HEATER, T1, 'gauge = 20.0\ngauge_system = "AWG"', "sheet.gauge: value is 20.0; allowed: a whole number or a text; do: write 20 without a point"),
+    "weight of another metal": (HEATER, T1, 'gauge = 16\ngauge_system = "oz/ft2"', 'sheet.gauge_system: value is "oz/ft2" with material = "aluminium 1085-O": a weight per area is a thickness of copper only; allowed: a sheet of copper, or one of AWG, SWG, USG, MSG; do: correct material or gauge_system'),
+    "weight too small": (HEATER, T1, 'gauge = 3\ngauge_system = "oz/ft2"', "sheet.gauge: value is 3; allowed: the numbers of oz/ft2: whole numbers from 4 to 96"),
     "gauge against thickness": (HEATER, T1, f'{T1}\ngauge = 16\ngauge_system = "AWG"', "but AWG 16 is 1.2908"),
     "sheet polished away": (HEATER, T1, f"{T1}\ncoating_thickness = -1.0", "polishing would leave nothing of a sheet of 1 mm"),
     # forming
@@ -209,6 +212,13 @@ def test_every_finding_is_named_not_only_the_first() -> None:
         "turning.spindle_limit_untrued",
         "mould.material",
     }
+
+
+@pytest.mark.parametrize("gauge", ["20.0", "20.5", "true", "[]", '""', "{}"])
+def test_a_gauge_of_the_wrong_type_is_one_fault(gauge: str) -> None:
+    with pytest.raises(JobError, match=r"sheet\.gauge: value is") as caught:
+        parse_job(HEATER.replace(T1, f'gauge = {gauge}\ngauge_system = "AWG"'), name="edited.toml")
+    assert len(str(caught.value).splitlines()) == 1
 
 
 def test_an_empty_file_names_every_required_key() -> None:

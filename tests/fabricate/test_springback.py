@@ -2,19 +2,15 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 from numpy.testing import assert_allclose
 
 from fabricate.bending import BendingSheet
 from fabricate.chain import rim_arc_length
+from fabricate.curvature_map import ReleasedFace, depth_loss, rim_slope_loss
 from fabricate.forming_keys import Springback
-from fabricate.springback import (
-    ReleasedFace,
-    StatedSpringback,
-    depth_loss,
-    percent_of,
-    rim_slope_loss,
-    springback_map,
-)
+from fabricate.springback import StatedSpringback, percent_of, springback_map
 from profiles.errors import JobError
 from profiles.face import Face
 from profiles.meridian import Meridian
@@ -102,6 +98,33 @@ def test_bending_opens_the_mid_surface_as_the_cubic_says() -> None:
     assert_allclose(released, middle * (1.0 - 3.0 * share + 4.0 * share**3), rtol=1e-11)
     again = springback_map(_stated(part, law="bending", flow_stress_mpa=12.0)).release(on_mould)
     assert_allclose(again.points(where), part.meridian.points(where), atol=1e-10)
+
+
+@settings(max_examples=30)
+@given(
+    st.floats(0.2, 1.5),
+    st.sampled_from(
+        [
+            {"law": "none"},
+            {"law": "focal-length", "percent": 4.0},
+            {"law": "focal-length", "percent": -3.0},
+            {"law": "curvature", "percent": 3.0},
+            {"law": "curvature", "depth_loss": 0.5},
+            {"law": "focal-length", "rim_slope_loss_deg": 0.3},
+            {"law": "bending", "flow_stress_mpa": 2.0},
+            {"law": "stations", "stations": ((0.0, 1.0), (60.0, -0.5), (120.0, 2.0), (200.0, 0.5))},
+        ]
+    ),
+)
+def test_what_is_released_is_what_was_loaded(ratio: float, table: dict[str, object]) -> None:
+    face = Face(400.0 * ratio)
+    rim = rim_arc_length(face, 200.0)
+    part = ReleasedFace(face, Meridian.of_face(face, rim + 8.0), rim)
+    springback = springback_map(_stated(part, **table))
+    again = springback.release(springback.load(part.meridian))
+    where = np.linspace(0.0, part.meridian.end, 201)
+    assert_allclose(again.points(where), part.meridian.points(where), atol=1e-9)
+    assert again.end == pytest.approx(part.meridian.end, abs=1e-9)
 
 
 def test_an_absurd_estimate_is_refused_unless_accepted() -> None:

@@ -138,7 +138,9 @@ def test_defaults_of_an_inch_job_are_inches() -> None:
 def test_every_key_stands_there_with_its_meaning_and_what_is_allowed(units: str) -> None:
     text = starter_text({"units": units}, tables=OPTIONAL)
     names = [key.rpartition(".")[2] for key in all_keys()]
-    comments = re.findall(r"^# (\w+): .+?\.(?: |\n# )Allowed: .+?\.\n(?:# )?\1 =", text, re.MULTILINE | re.DOTALL)
+    comments = re.findall(
+        r"^# (\w+): .+?\.(?: |\n# )Allowed:(?: |\n# ).+?\.\n(?:# )?\1 =", text, re.MULTILINE | re.DOTALL
+    )
     assert comments == names
 
 
