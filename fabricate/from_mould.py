@@ -30,6 +30,7 @@ SAMPLES_PER_ARC = 25
 BALL_CENTRES = {"ball-centre", "ball-centres", "ball-center", "ball-centers"}
 ROUNDS = 30
 SAME_FOCUS = 1e-9
+SAME_PLACE = 1e-6
 LEAST_SHOWN = 5e-5
 
 
@@ -142,6 +143,14 @@ def _drawn(source: Path, chain: Chain) -> tuple[Array, Array]:
             "bore outwards; do: draw it on that layer"
         )
     path = paths[0].scaled(unit_length(drawing.units)).swapped()
+    if path.vertices[-1, 0] < path.vertices[0, 0]:
+        path = path.reversed()
+    least = float(path.vertices[:, 0].min())
+    if least < -SAME_PLACE:
+        raise JobError(
+            f"{source}: the mould's curve begins at radius {least:.6g} mm; allowed: one side of the axis, radius 0 and "
+            "more; do: draw half of the section, the axis at y = 0"
+        )
     male = chain.kind == "male"
     falls = float(path.vertices[-1, 1]) < float(path.vertices[0, 1])
     if falls != male:

@@ -7,6 +7,7 @@ a thickness from a gauge, and the kind of a sheet that the table lacks from the 
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
+from math import floor
 from types import MappingProxyType
 from typing import Any
 
@@ -16,6 +17,7 @@ from fabricate.job_findings import Finding, inner_table, shown
 from fabricate.job_table import Table, measure_of
 from fabricate.materials import has_material
 from fabricate.measures import MM_PER_INCH, Units
+from fabricate.roughness import feed_for_rt, rt_for_ra
 from profiles.errors import JobError
 from profiles.face import Face
 
@@ -198,11 +200,39 @@ def _needs_thickness(facts: Facts) -> bool:
     return str(facts["sheet.gauge"]) in GAUGE_SYSTEMS.get(str(facts["sheet.gauge_system"]), {})
 
 
+def _needs_feed(facts: Facts) -> bool:
+    """Whether a roughness is asked for that a round nose can leave."""
+    height = asked_cusp(facts)
+    return 0.0 < height < float(facts["turning.nose_radius"]) * _unit(facts)
+
+
+def asked_cusp(facts: Facts) -> float:
+    """Return the height of the cusps that a job with a ``[turning]`` table asks for [mm], 0 where it asks for none."""
+    if facts.typed.get("turning") is None:
+        return 0.0
+    mean = float(facts["turning.roughness_ra_um"])
+    return 1e-3 * (rt_for_ra(mean) if mean else float(facts["turning.roughness_rt_um"]))
+
+
+def feed_in_units(facts: Facts) -> float:
+    """Return the finishing feed that leaves the roughness asked for [units of the job]."""
+    unit = _unit(facts)
+    feed = feed_for_rt(asked_cusp(facts), float(facts["turning.nose_radius"]) * unit)
+    # Five digits, the last one downwards: a program writes no more, and the roughness is kept.
+    step = 1e-5
+    return float(f"{floor(feed / unit / step) * step:.5f}")
+
+
+def _unit(facts: Facts) -> float:
+    return MM_PER_INCH if facts.units == "inch" else 1.0
+
+
 _DERIVED: Mapping[str, tuple[Callable[[Facts], bool], Callable[[Facts], Any]]] = MappingProxyType(
     {
         "reflector.focal_length": (_needs_focal_length, _focal_length),
         "sheet.thickness": (_needs_thickness, gauge_in_units),
         "sheet.properties.kind": (_needs_kind, _kind),
+        "turning.finishing_feed": (_needs_feed, feed_in_units),
     }
 )
 

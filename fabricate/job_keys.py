@@ -15,7 +15,7 @@ from fabricate.forming_keys import FaceWord, Forming, Sheet
 from fabricate.job_table import Table, from_inches
 from fabricate.measures import Coefficients, Units, Words, length, plain
 from fabricate.mould_keys import FollowBlock, Mould
-from fabricate.turning_keys import Turning
+from fabricate.turning_keys import Machine, Turning
 
 # The same word of a control's dialect in a millimetre job.
 _MILLIMETRE_WORDS = {"G20": "G21", "G70": "G71"}
@@ -108,6 +108,7 @@ class Job(Table):
     tolerance: Tolerance
     drawing: Drawing = Drawing()
     turning: Turning | None = Field(default=None, description="the turning program; without this table none is written")
+    machine: Machine | None = Field(default=None, description="the lathe; a stock that does not fit it is refused")
 
     def in_millimetres(self) -> Job:
         """Return the same job with millimetres as its unit; a millimetre job is returned as it is.

@@ -4,9 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+from fabricate.job_derive import asked_cusp, feed_in_units
 from fabricate.job_facts import Facts
 from fabricate.job_findings import Finding
 from fabricate.materials import has_material, material
+from fabricate.measures import MM_PER_INCH
 
 _UNITS_OF_WORD = {"G20": "inch", "G70": "inch", "G21": "mm", "G71": "mm"}
 _FEWEST_DECIMALS = {"mm": 3, "inch": 4}
@@ -62,5 +64,43 @@ def _absolute_word(facts: Facts) -> Iterator[Finding]:
         yield Finding(f"{control}.absolute_word", problem, allowed, "look both words up in the control's manual")
 
 
-TURNING_RULES = (_rim_speed, _spindle_limits, _decimals, _units_word, _absolute_word)
+def _roughness(facts: Facts) -> Iterator[Finding]:
+    """Refuse a roughness stated twice, one that no nose leaves, and a feed that contradicts it."""
+    height, mean = facts["turning.roughness_rt_um"], facts["turning.roughness_ra_um"]
+    name = "turning.roughness_ra_um" if mean else "turning.roughness_rt_um"
+    if height and mean:
+        problem = f"value is {mean:g} um with roughness_rt_um = {height:g} um"
+        yield Finding(name, problem, "one of the two", "take the other one away, or write 0")
+        return
+    cusp = asked_cusp(facts)
+    nose = facts["turning.nose_radius"] * (MM_PER_INCH if facts.units == "inch" else 1.0)
+    if cusp >= nose:
+        problem = f"value is {mean or height:g} um, a cusp {1e3 * cusp:.4g} um high"
+        yield Finding(name, problem, f"cusps lower than the nose radius, {1e3 * nose:g} um", "correct one of them")
+    elif cusp:
+        wanted, typed = feed_in_units(facts), facts["turning.finishing_feed"]
+        if abs(typed - wanted) > 1e-9:
+            problem = f"value is {typed:g} {facts.length_unit} and {name.split('.')[1]} asks for {wanted:g}"
+            yield Finding("turning.finishing_feed", problem, "the two in agreement", "state one of them")
+
+
+def _machine(facts: Facts) -> Iterator[Finding]:
+    """Refuse a spindle limit that the lathe cannot turn at."""
+    if facts.typed.get("machine") is None:
+        return
+    lowest, highest = facts["machine.lowest_speed"], facts["machine.highest_speed"]
+    if highest and lowest > highest:
+        problem = f"value is {lowest:g} rev/min"
+        yield Finding("machine.lowest_speed", problem, f"at most highest_speed, {highest:g} rev/min", "correct one")
+    for name in ("spindle_limit", "spindle_limit_untrued"):
+        value = facts[f"turning.{name}"]
+        if highest and value > highest:
+            allowed = f"at most machine.highest_speed, {highest:g} rev/min"
+            yield Finding(f"turning.{name}", f"value is {value:g} rev/min", allowed, "lower it")
+        if value < lowest:
+            allowed = f"at least machine.lowest_speed, {lowest:g} rev/min"
+            yield Finding(f"turning.{name}", f"value is {value:g} rev/min", allowed, "raise it, or use another lathe")
+
+
+TURNING_RULES = (_rim_speed, _spindle_limits, _decimals, _units_word, _absolute_word, _roughness, _machine)
 """The rules of a job that has a ``[turning]`` table."""

@@ -123,6 +123,8 @@ def _contents(order: Order) -> Mapping[str, Callable[[Path], None]]:
     """Return what writes each file; everything that a job can be refused for is computed before."""
     job = order.job
     _ = order.blank  # what it is refused for is found before anything is written
+    if job.turning is not None:
+        _ = order.stock_fit
     drawing = lathe_drawing(order.chain, order.forming_arcs.path, job)
     mesh = order.mesh
     program = order.turning_plan.program if job.turning is not None else None

@@ -15,6 +15,7 @@ from fabricate.holes import drilled_mould
 from fabricate.job import Job, job_hash, job_text
 from fabricate.mould import Mould
 from fabricate.solid import FITTED
+from fabricate.stock_fit import StockFit, stock_fit
 from fabricate.turning import TurningPlan, plan_turning
 from profiles.arcs import ArcFit, fewest_arcs
 from profiles.drilled_mesh import drilled_mesh
@@ -112,6 +113,11 @@ class Order:
     def turning_plan(self) -> TurningPlan:
         """The turning program, for a job that asks for one."""
         return plan_turning(self.job, self.mould, self.forming_arcs.path)
+
+    @cached_property
+    def stock_fit(self) -> StockFit:
+        """Size and mass of stock and mould, for a job that asks for a turning program [mm, kg]."""
+        return stock_fit(self.job, self.mould, self.exact_solid.volume)
 
     @cached_property
     def follow_block(self) -> FollowBlock:

@@ -10,6 +10,7 @@ from typing import Any
 import numpy as np
 
 from fabricate.drawing import unit_length
+from fabricate.holes import drilling_words
 from fabricate.make import MadePackage
 from fabricate.measures import Units
 from fabricate.notices import notices
@@ -220,8 +221,18 @@ def _mould_lines(order: Order) -> list[str]:
         ("springback", figures.springback_words),
         ("arcs", f"{figures.arcs} (theory allows {figures.arcs_limit:.2f} for this chord error)"),
         ("solid", f"{figures.facets} triangles"),
+        *((("stock", _stock_words(order)),) if order.job.turning is not None else ()),
+        *(("drilled", text) for text in drilling_words(order.job)),
     )
     return _lines(rows)
+
+
+def _stock_words(order: Order) -> str:
+    fit, unit, name = order.stock_fit, order.unit, UNIT_NAMES[order.job.units]
+    size = f"{fit.diameter / unit:.2f} {name} wide, {fit.length / unit:.2f} {name} long"
+    if fit.stock_mass is None or fit.mould_mass is None:
+        return f"{size}; its mass is not known, as mould.material is not stated"
+    return f"{size}; {fit.stock_mass:.4g} kg, of which {fit.mould_mass:.4g} kg are the mould"
 
 
 def _lines(rows: Iterable[tuple[str, str]]) -> list[str]:

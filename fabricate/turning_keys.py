@@ -1,4 +1,4 @@
-"""The keys of the job file that say how the mould is turned: ``[turning]`` and ``[turning.control]``.
+"""The keys of the job file that say how the mould is turned, and on what: ``[turning]`` and ``[machine]``.
 
 A key's type, bounds, unit, default and meaning stand here and nowhere else; see ``job_keys``.
 """
@@ -51,7 +51,30 @@ class Turning(Table):
     finish_allowance: Annotated[float, length(0.0, 20.0)] = Field(default=0.3, description="left by roughing")
     roughing_feed: Annotated[float, length(0.001, 10.0)] = Field(default=0.25, description="per revolution")
     finishing_feed: Annotated[float, length(0.001, 10.0)] = Field(default=0.1, description="per revolution")
+    roughness_rt_um: Annotated[float, plain(0.0, 500.0, unit="um")] = Field(
+        default=0.0, description="height of the cusps asked for, from which finishing_feed follows; 0: not asked for"
+    )
+    roughness_ra_um: Annotated[float, plain(0.0, 100.0, unit="um")] = Field(
+        default=0.0, description="instead of roughness_rt_um: mean roughness of the cusps; 0: not asked for"
+    )
     stock_allowance: Annotated[float, length(0.0, 500.0)] = Field(
         default=3.0, description="a plain cylinder: this much larger on the radius and on the front"
     )
     control: Control
+
+
+class Machine(Table):
+    """The lathe: what it takes and how it turns; a stock that does not fit is refused."""
+
+    swing: Annotated[float, length(0.0, 1e5)] = Field(
+        default=0.0, description="largest diameter that turns over the bed and slide; 0: not stated"
+    )
+    largest_mass_kg: Annotated[float, plain(0.0, 1e6, unit="kg")] = Field(
+        default=0.0, description="of stock that the spindle carries; 0: not stated"
+    )
+    lowest_speed: Annotated[float, plain(0.0, 1e5, unit="rev/min")] = Field(
+        default=0.0, description="of the spindle; 0: not stated"
+    )
+    highest_speed: Annotated[float, plain(0.0, 1e5, unit="rev/min")] = Field(
+        default=0.0, description="of the spindle; 0: not stated"
+    )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from functools import partial
 
@@ -18,6 +19,8 @@ WORTH = 6.0
 """By how much a further term must better the criterion: noise does so in about one of a hundred sets of points."""
 LARGEST = 1e6
 """Largest coordinate of a point [mm]."""
+FAR = 5e-3
+"""Points further from every bowl than this part of their largest radius, root mean square, are those of no bowl."""
 TINY = 1e-30
 ROUNDING = 1e-12
 """Distances below this part of the largest radius are rounding."""
@@ -62,7 +65,7 @@ def fitted_face(radius: Array, height: Array, *, most_terms: int = 4) -> FittedF
     ------
     GeometryError
         If a coordinate is not finite or too large, there are fewer than 4 different radii, or no face that opens
-        upwards comes near the points.
+        upwards comes near the points: nearer than half a percent of the largest radius, root mean square.
 
     Notes
     -----
@@ -72,21 +75,29 @@ def fitted_face(radius: Array, height: Array, *, most_terms: int = 4) -> FittedF
     """
     size = _checked_size(radius, height)
     most_terms = min(most_terms, _different(radius) - 4)
-    best = _even(radius, height, size, 0)
-    least = _loss(best.gaps, size) if best else np.inf
-    others = [lambda: _conic(radius, height, size)] if most_terms > 0 else []
-    others += [partial(_even, radius, height, size, terms) for terms in range(1, most_terms + 1)]
-    for number, candidate in enumerate(others):
-        found = candidate()
-        loss = _loss(found.gaps, size, max(number, 1)) if found else np.inf
-        if loss < least - WORTH:
-            best, least = found, loss
+    best = _even(radius, height, size)
     if best is None:
         raise GeometryError(
             "no bowl that opens upwards comes near the points; allowed: points of a bowl, its heights counted towards "
             "the rim; do: check signs and columns"
         )
-    return FittedFace(best.face, best.vertex, float(np.sqrt(np.mean(best.gaps**2))))
+    least = _loss(best.gaps, size)
+    shapes: list[tuple[int, Callable[[Array, Array, float], _Candidate | None]]] = [
+        (1, _conic),
+        *((terms, partial(_even, terms=terms)) for terms in range(1, most_terms + 1)),
+    ]
+    for terms, nearest in shapes if most_terms > 0 else ():
+        found = nearest(radius, height, size)
+        loss = _loss(found.gaps, size, terms) if found else np.inf
+        if found is not None and loss < least - WORTH:
+            best, least = found, loss
+    rms = float(np.sqrt(np.mean(best.gaps**2)))
+    if rms > FAR * size:
+        raise GeometryError(
+            f"the points stray from the nearest bowl by {rms:.4g} mm RMS; allowed: up to {FAR * size:.4g} mm, "
+            f"{100.0 * FAR:g} % of their largest radius; do: check columns, unit, and that the radius is 0 on the axis"
+        )
+    return FittedFace(best.face, best.vertex, rms)
 
 
 @dataclass(frozen=True, eq=False)
@@ -116,7 +127,7 @@ def _checked_size(radius: Array, height: Array) -> float:
     return float(np.abs(radius).max())
 
 
-def _even(radius: Array, height: Array, size: float, terms: int) -> _Candidate | None:
+def _even(radius: Array, height: Array, size: float, terms: int = 0) -> _Candidate | None:
     """Return the nearest paraboloid with some even terms added; None where it opens downwards."""
     share = radius / size
     powers = 2 * np.arange(terms + 2)
@@ -126,7 +137,7 @@ def _even(radius: Array, height: Array, size: float, terms: int) -> _Candidate |
     for _ in range(ROUNDS):
         values = np.asarray(np.linalg.lstsq(basis * weights[:, None], height * weights, rcond=None)[0])
         weights = 1.0 / np.hypot(1.0, incline @ values)
-    vertex, opening, *more = (values / size**powers.astype(np.float64)).tolist()
+    vertex, opening, *more = (values / size ** powers.astype(np.float64)).tolist()
     if opening <= 0.0:
         return None
     return _Candidate(Face(0.25 / opening, -1.0, tuple(more)), vertex, (height - basis @ values) * weights)

@@ -37,6 +37,8 @@ STEPS_WITHOUT_GAIN = 3
 NEAR_ENOUGH = 1e-8
 SAME_PLACE = 5e-3
 """A break of the curve and one of the distance that are as near as this part of its length are one material point."""
+AT_THE_END = 1e-4
+"""A kink of the distance as near to an end of the curve as this part of its length is left to that end."""
 
 
 def offset_source(curve: Meridian, distance_of: Distance) -> Meridian:
@@ -172,10 +174,13 @@ class _Guess:
 
     def moved(self, coefficients: Array, run: Series) -> _Guess:
         """Return another guess, its free joints where the last try has them."""
+        least = 0.01 * AT_THE_END * (run.end - run.start)
         joints = tuple(
             joint
             if joint.fixed or joint.there is None
-            else _Joint(float(run.solve(joint.there)), joint.there, fixed=False)
+            else _Joint(
+                float(np.clip(run.solve(joint.there), run.start + least, run.end - least)), joint.there, fixed=False
+            )
             for joint in self.joints
         )
         return _Guess(joints, coefficients, self.counts)
@@ -200,11 +205,11 @@ def _coefficients(distance: Series, run: Series, ends: tuple[float, float], coun
 
 def _joints(curve: Meridian, run: Series, kinks: Array) -> tuple[_Joint, ...]:
     """Return breaks of the known curve, kinks of the distance, and those that are one material point."""
-    near = SAME_PLACE * (curve.end - curve.start)
+    near, least = SAME_PLACE * (curve.end - curve.start), AT_THE_END * (curve.end - curve.start)
     inner = curve.breaks[1:-1]
     images = run(inner)
     joints = []
-    left = set(kinks.tolist())
+    left = set(kinks[(kinks > run(curve.start) + least) & (kinks < run(curve.end) - least)].tolist())
     for here, image in zip(inner.tolist(), images.tolist(), strict=True):
         kink = min(left, key=lambda place: abs(place - image), default=np.inf)
         paired = abs(kink - image) < near and abs(kink - image) <= np.abs(images - kink).min()
@@ -225,6 +230,10 @@ def _own_breaks(distance: Series, curve: Meridian) -> Array:
 def _between(series: Series, start: float, end: float) -> Series:
     """Return a series' pieces between two places."""
     least = 1e-9 * (series.end - series.start)
-    return Series(
-        tuple(piece for piece in series.pieces if piece.domain[1] > start + least and piece.domain[0] < end - least)
-    )
+    pieces = tuple(p for p in series.pieces if p.domain[1] > start + least and p.domain[0] < end - least)
+    if not pieces:
+        raise GeometryError(
+            "the thickness changes too suddenly between two places of the curve; allowed: a smooth run between the rows "
+            "of a table; do: state it by a gentler table"
+        )
+    return Series(pieces)

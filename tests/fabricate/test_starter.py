@@ -50,6 +50,7 @@ OPTIONAL = (
     "mould.bolts",
     "follow_block",
     "turning",
+    "machine",
 )
 
 
