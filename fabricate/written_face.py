@@ -20,6 +20,8 @@ from profiles.series import Series, resolve
 Array = NDArray[np.float64]
 
 NEWTON_STEPS = 12
+INNER_POWER = 12
+"""Even, and high enough that the lean at a bore's edge dies out near it and moves the virtual vertex by little."""
 
 
 def face_over(chain: Chain, path: ArcPath, *, clearance: float = 0.0) -> Meridian:
@@ -90,9 +92,11 @@ def _strays(chain: Chain, path: ArcPath, clearance: float) -> Series:
 def _carried_to_axis(strays: Series, first: float) -> Series:
     """Return what strays outside a bore, carried on to the axis: level there, and smooth at the bore."""
     value, lean = float(strays(first)), float(strays.derivative()(first))
-    (inner,) = resolve(
-        lambda where: (value + 0.5 * lean * (where**2 - first**2) / first)[None], [0.0, first], sizes=[strays.size]
-    )
+
+    def inside(where: Array) -> Array:
+        return np.asarray((value + lean * first / INNER_POWER * ((where / first) ** INNER_POWER - 1.0))[None])
+
+    (inner,) = resolve(inside, [0.0, first], sizes=[strays.size])
     return Series((*inner.pieces, *strays.pieces))
 
 

@@ -149,7 +149,8 @@ def _conic(radius: Array, height: Array, size: float) -> _Candidate | None:
     With the vertex at height v, ``r² = 2 R0 (z − v) − (1 + K)(z − v)²``: linear in the coefficients of z, and what
     remains is the normal distance times the gradient.
     """
-    square, tall = (radius / size) ** 2, height / size
+    innermost = float(height[np.argmin(np.abs(radius))])
+    square, tall = (radius / size) ** 2, (height - innermost) / size
     basis = np.vander(tall, 3, increasing=True)
     weights = np.ones(len(radius))
     for _ in range(ROUNDS):
@@ -159,12 +160,12 @@ def _conic(radius: Array, height: Array, size: float) -> _Candidate | None:
     inside = rise**2 - 4.0 * level * bend
     if rise <= 0.0 or inside <= 0.0:
         return None
-    vertex = -2.0 * level / (rise + inside**0.5)
-    face = Face(0.25 * size * (rise + 2.0 * bend * vertex), -1.0 - bend)
-    if float(np.abs(radius).max()) >= face.widest:
+    over = -2.0 * level / (rise + inside**0.5)
+    face, vertex = Face(0.25 * size * (rise + 2.0 * bend * over), -1.0 - bend), innermost + size * over
+    if size >= face.widest:
         return None
-    gaps = (height - size * vertex - face.height(radius)) / np.hypot(1.0, face.incline(radius))
-    return _Candidate(face, size * vertex, gaps)
+    gaps = (height - vertex - face.height(radius)) / np.hypot(1.0, face.incline(radius))
+    return _Candidate(face, vertex, gaps)
 
 
 def _loss(gaps: Array, size: float, terms: int = 0) -> float:

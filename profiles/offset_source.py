@@ -233,7 +233,7 @@ def _between(series: Series, start: float, end: float) -> Series:
     pieces = tuple(p for p in series.pieces if p.domain[1] > start + least and p.domain[0] < end - least)
     if not pieces:
         raise GeometryError(
-            "the thickness changes too suddenly between two places of the curve; allowed: a smooth run between the rows "
-            "of a table; do: state it by a gentler table"
+            "the thickness changes too suddenly somewhere on the curve; allowed: a smooth run between the rows of a "
+            "table; do: state it by a gentler table"
         )
     return Series(pieces)

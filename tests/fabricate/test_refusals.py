@@ -211,14 +211,14 @@ MESHES = {
 @pytest.mark.parametrize("case", MESHES)
 def test_a_bad_mesh_never_gets_into_place(case: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     change, says = MESHES[case]
-    revolve = order.revolve
+    drilled_mesh = order.drilled_mesh
 
     def spoilt(*arguments: Any, **options: Any) -> Any:
-        mesh = revolve(*arguments, **options)
+        mesh = drilled_mesh(*arguments, **options)
         vertices, triangles = change(mesh.vertices, mesh.triangles)
         return type("Mesh", (), {"vertices": vertices, "triangles": triangles})
 
-    monkeypatch.setattr(order, "revolve", spoilt)
+    monkeypatch.setattr(order, "drilled_mesh", spoilt)
     result = make(MALE[: MALE.index("[turning]")], tmp_path)
     assert result.exit_code == 1
     assert "the proof of mould.stl failed: nothing was moved into place" in result.stderr
