@@ -97,6 +97,50 @@ class CurvatureMap:
         """Return the released face, from the face as it lies on the mould [mm]."""
         return self._mapped(on_mould, self.released)
 
+    def release_near(self, written: Meridian, on_mould: Meridian, part: Meridian) -> Meridian:
+        """Return the released face of a sheet on a mould that strays a little from the exact one.
+
+        Parameters
+        ----------
+        written : Meridian
+            The face on that mould; kinks and flats, as a mould cut in chords has, are allowed [mm].
+        on_mould, part : Meridian
+            The face on the exact mould, and what it releases to [mm].
+
+        Returns
+        -------
+        Meridian
+            The released face [mm].
+
+        Notes
+        -----
+        ``ψ_part + ∫ q d(ψ_written − ψ_mould)``, q the share of a small turn on the mould that is left on release, from
+        the exact curvature there. So a turn springs back alike whether it is spread over an arc or gathered in a kink.
+        """
+        end = written.end
+        breaks = merged_breaks(written.breaks, on_mould.breaks, part.breaks, self.breaks, start=written.start, end=end)
+        step = 1e-3 / end
+
+        def left(where: Array) -> Array:
+            bend = on_mould.curvature(where)
+            return np.asarray((self.released(where, bend + step) - self.released(where, bend - step)) / (2.0 * step))
+
+        def strays(where: Array) -> Array:
+            return written.slope(where) - on_mould.slope(where)
+
+        # A difference of two curvatures keeps their digits but for three.
+        (share,) = resolve(lambda where: left(where)[None], breaks, sizes=[1e3])
+        rate = share.derivative()
+        (drift,) = resolve(lambda where: (rate(where) * strays(where))[None], breaks, sizes=[10.0 / end])
+        drifted = drift.integral()
+        (slope,) = resolve(
+            lambda where: (part.slope(where) + share(where) * strays(where) - drifted(where))[None], breaks, sizes=[1.0]
+        )
+        across, up = resolve(
+            lambda where: np.stack([np.cos(slope(where)), np.sin(slope(where))]), slope.breaks, sizes=[1.0, 1.0]
+        )
+        return Meridian(across.integral(value=float(written.radius(written.start))), up.integral(), slope)
+
     def _mapped(self, meridian: Meridian, change: Bends) -> Meridian:
         start, end = meridian.start, meridian.end
         breaks = merged_breaks(meridian.breaks, self.breaks, start=start, end=end)

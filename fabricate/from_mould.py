@@ -113,7 +113,9 @@ def part_of_mould(job: Job, source: Path) -> PartOfMould:
             f"{source}: the part on this mould ends at radius {reach:.6g} mm, within its own hole; allowed: a mould "
             f"that reaches past the hole's radius, {hole:.6g} mm; do: check the mould's points and their unit"
         )
-    predicted = PredictedPart(part, wanted.released.meridian, hole, wanted.released.rim, min(rim, reach))
+    predicted = PredictedPart(
+        part, wanted.released.meridian, hole, wanted.released.rim, wanted.released.rim, min(rim, reach)
+    )
     return PartOfMould(source, fit, float(radius.max()), predicted, reach)
 
 

@@ -14,14 +14,17 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fabricate.chain import Chain
-from fabricate.springback import LAWS, MOST_PERCENT, added_curvature, percent_of, springback_map
+from fabricate.springback import LAWS, added_curvature, percent_of, springback_map
 from fabricate.written_face import face_over
 from profiles.arcpath import ArcPath
 from profiles.best_parabola import best_parabola
+from profiles.face import Face
 from profiles.meridian import Meridian
 from profiles.series import Series
 
 Array = NDArray[np.float64]
+Moved = tuple[Meridian, float]
+"""A released face and the arc length of the rim's material point along it [mm]."""
 
 STATIONS = 17
 ONE_POINT = 0.01
@@ -41,7 +44,9 @@ class PredictedPart:
     wanted : Meridian
         The face that was asked for, likewise [mm].
     hole_radius, rim : float
-        Radius of the hole [mm], and arc length of the rim's material point [mm].
+        Radius of the hole [mm], and arc length of the rim's material point along the predicted face [mm].
+    wanted_rim : float
+        Arc length of the rim along the wanted face [mm].
     trimmed_radius : float or None
         Radius at which the rim is cut, where that happens after release [mm].
     """
@@ -50,6 +55,7 @@ class PredictedPart:
     wanted: Meridian
     hole_radius: float
     rim: float
+    wanted_rim: float
     trimmed_radius: float | None
 
     @property
@@ -79,7 +85,7 @@ class PredictedPart:
 
     def stations(self, count: int = STATIONS) -> Array:
         """Return radii even from the hole to the rim that was asked for, as far as the face reaches [mm]."""
-        end = min(float(self.wanted.radius(self.rim)), float(self.face.radius(self.face.end)))
+        end = min(float(self.wanted.radius(self.wanted_rim)), float(self.face.radius(self.face.end)))
         return np.linspace(self.hole_radius, end, count)
 
     def sag_error(self, radius: Array) -> Array:
@@ -154,12 +160,15 @@ def predicted_part(chain: Chain, path: ArcPath, *, clearance: float = 0.0) -> Pr
     GeometryError
         If the path strays so far from the exact curve that no face lies over it.
     """
-    return _part(chain, chain.springback.release(face_over(chain, path, clearance=clearance)))
+    written = face_over(chain, path, clearance=clearance)
+    (rim,) = written.nearest(chain.on_mould.points([chain.released.rim]))
+    face = chain.springback.release_near(written, chain.on_mould, chain.released.meridian)
+    return _part(chain, face, float(rim))
 
 
 def exact_part(chain: Chain) -> PredictedPart:
     """Return the part that the exact mould makes: the reflector that was asked for."""
-    return _part(chain, chain.released.meridian)
+    return _part(chain, chain.released.meridian, chain.released.rim)
 
 
 def sensitivities(chain: Chain) -> tuple[Sensitivity, ...]:
@@ -176,10 +185,10 @@ def sensitivities(chain: Chain) -> tuple[Sensitivity, ...]:
         One for each cause, for a change upwards; shrinkage is left out for a metal that is not said to shrink.
     """
     before = exact_part(chain)
-    return tuple(_moved(before, cause, _part(chain, face(chain))) for cause, face in _causes(chain))
+    return tuple(_moved(before, cause, _part(chain, *moved(chain))) for cause, moved in _causes(chain))
 
 
-def _causes(chain: Chain) -> tuple[tuple[str, Callable[[Chain], Meridian]], ...]:
+def _causes(chain: Chain) -> tuple[tuple[str, Callable[[Chain], Moved]], ...]:
     sheet = chain.job.sheet
     stated = f"{sheet.thickness_tolerance:g} mm" if sheet.thickness_tolerance else f"{100.0 * UNKNOWN_TOLERANCE:g} %"
     thickness = f"a sheet thicker by its tolerance, {stated}" + ("" if sheet.thickness_tolerance else " taken")
@@ -189,19 +198,24 @@ def _causes(chain: Chain) -> tuple[tuple[str, Callable[[Chain], Meridian]], ...]
     return (*causes, ("0.1 % more of shrinkage", _more_shrinkage))
 
 
-def _one_point_more(chain: Chain) -> Meridian:
-    stated = chain.stated_springback
-    rows, law = stated.table.stations, stated.table.law if stated.table.law != "none" else "focal-length"
+def _one_point_more(chain: Chain) -> Moved:
+    """Return the part of the same mould where its law has one percentage point more."""
+    stated, rim = chain.stated_springback, chain.released.rim
+    rows, law = stated.table.stations, stated.table.law
     if rows is not None:
         raised = np.array(rows) + np.array([0.0, 100.0 * ONE_POINT])
-        return added_curvature(stated.part, raised).release(chain.on_mould)
+        return added_curvature(stated.part, raised).release(chain.on_mould), rim
+    if law in {"none", "focal-length"}:
+        # By that law the mould is the part's own face refocused, so the part is such a face again.
+        face, kept = chain.released.face, 1.0 - 0.01 * percent_of(stated)
+        longer = Face(face.focal_length * kept / (kept - ONE_POINT), face.conic_constant, face.asphere)
+        return Meridian.of_face(longer, chain.released.meridian.end), rim
     if "percent" not in LAWS[law].one_of:
-        return chain.springback.weakened(ONE_POINT).release(chain.on_mould)
-    percent = percent_of(stated) + 100.0 * ONE_POINT
-    return LAWS[law].make(stated, min(percent, MOST_PERCENT + 1.0)).release(chain.on_mould)
+        return chain.springback.weakened(ONE_POINT).release(chain.on_mould), rim
+    return LAWS[law].make(stated, percent_of(stated) + 100.0 * ONE_POINT).release(chain.on_mould), rim
 
 
-def _thicker_sheet(chain: Chain) -> Meridian:
+def _thicker_sheet(chain: Chain) -> Moved:
     sheet, stated = chain.job.sheet, chain.stated_springback
     share = sheet.thickness_tolerance / sheet.thickness or UNKNOWN_TOLERANCE
     through = float(chain.job.forming.contact_face == "concave") - float(
@@ -212,15 +226,19 @@ def _thicker_sheet(chain: Chain) -> Meridian:
     if stated.table.law == "bending":
         thicker = replace(stated.sheet, thickness=(1.0 + share) * stated.sheet.thickness)
         springback = springback_map(replace(stated, sheet=thicker))
-    return springback.release(chain.on_mould.offset(further))
+    laid, rim = chain.on_mould.offset(further), chain.released.rim
+    # The rim stays opposite the same place of the mould.
+    foot = chain.on_mould.points(rim) + further(rim) * chain.on_mould.normals(rim)
+    return springback.release(laid), float(laid.at_radius(foot[0]))
 
 
-def _more_shrinkage(chain: Chain) -> Meridian:
+def _more_shrinkage(chain: Chain) -> Moved:
     kept = 1.0 - 0.01 * chain.job.forming.shrinkage.percent
-    return chain.released.meridian.scaled((kept - SHRINKAGE_STEP) / kept)
+    scale = (kept - SHRINKAGE_STEP) / kept
+    return chain.released.meridian.scaled(scale), scale * chain.released.rim
 
 
-def _part(chain: Chain, face: Meridian) -> PredictedPart:
+def _part(chain: Chain, face: Meridian, rim: float) -> PredictedPart:
     reflector = chain.job.reflector
     cut_later = chain.job.forming.trim == "after-release"
     on_vertex = face.raised(-float(face.height(face.start)))
@@ -228,7 +246,8 @@ def _part(chain: Chain, face: Meridian) -> PredictedPart:
         on_vertex,
         chain.released.meridian,
         0.5 * reflector.hole_diameter,
-        chain.released.rim * on_vertex.end / chain.released.meridian.end,
+        rim,
+        chain.released.rim,
         0.5 * reflector.rim_diameter if cut_later else None,
     )
 

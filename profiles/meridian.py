@@ -240,8 +240,12 @@ class Meridian:
         change = distance.derivative()
         turn = change.derivative()
         breaks = merged_breaks(self.breaks, distance.breaks, start=self.start, end=self.end)
-        if max(change.largest()[1], -change.smallest()[1]) >= 1.0:
-            raise GeometryError("a thickness changes faster than the arc length: check the thickness table")
+        steepest = max(change.largest()[1], -change.smallest()[1])
+        if steepest >= 1.0:
+            raise GeometryError(
+                f"a thickness changes by {steepest:.3g} mm per mm of the curve; allowed: less than 1; do: check the "
+                "thickness table"
+            )
 
         def values(where: Array) -> Array:
             radius, height, slope = self._values(where)
@@ -253,8 +257,12 @@ class Meridian:
             return np.asarray(lean + distance(where) * (self.curvature(where) - turn(where) / lean))
 
         (rate,) = resolve(lambda where: speed(where)[None], breaks, sizes=[1.0])
-        if rate.smallest()[1] <= 0.0:
-            raise GeometryError("an offset folds the curve: use a thinner sheet or cover")
+        folded, least = rate.smallest()
+        if least <= 0.0:
+            raise GeometryError(
+                f"an offset of {abs(float(distance(folded))):.6g} mm at radius {abs(float(self.radius(folded))):.6g} mm "
+                "folds the curve; allowed: less than its radius of curvature there; do: use a thinner sheet or cover"
+            )
         run = rate.integral(value=self.start)
         return _by_arc_length(values, run), run
 

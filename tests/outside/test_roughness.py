@@ -1,9 +1,9 @@
 """Cusps of a turned surface against worked examples.
 
-``Rt = f²/(8 r)`` with f = 0.2 mm and r = 0.8 mm gives 6.25 µm: a worked example seen on two web pages; an insert maker's
-note has the same as ``125 f²/r`` in µm (seen). Ra of a parabolic cusp is ``f²/(18 √3 r)``: one web page prints
-``f²/(31.2 r)`` = 1.60 µm, others ``f²/(32 r)`` = 1.56 µm, which takes Ra for a quarter of Rt (both seen; 31.2 is the right
-rounding of 31.1769).
+``Rt = f²/(8 r)`` with f = 0.2 mm and r = 0.8 mm gives 6.25 µm: a worked example seen on two web pages; an insert
+maker's note has the same as ``125 f²/r`` in µm (seen). Ra of a parabolic cusp is ``f²/(18 √3 r)``: one web page prints
+``f²/(31.2 r)`` = 1.60 µm, others ``f²/(32 r)`` = 1.56 µm, which takes Ra for a quarter of Rt (both seen; 31.2 is the
+right rounding of 31.1769).
 """
 
 from __future__ import annotations

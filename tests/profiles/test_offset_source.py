@@ -81,19 +81,17 @@ def test_a_measured_table(ratio: float, distance: float) -> None:
     assert gap(curve, table(distance, curve.end * np.array([0.0, 0.4, 0.7, 0.95]))) < 1e-10
 
 
-@pytest.mark.parametrize("last", [0.99, 0.999, 0.99995, 1.0, 1.00005, 1.001, 1.01])
+@pytest.mark.parametrize("last", [0.9, 0.99, 0.999, 0.99995, 1.0, 1.00005, 1.001, 1.01])
 @pytest.mark.parametrize("distance", [0.8, -0.8])
-def test_a_table_that_ends_near_the_end_of_the_curve(last: float, distance: float) -> None:
-    # The offset of a bowl outwards is longer than the bowl: a row of the table may lie on the one and not the other.
+def test_a_table_under_a_smooth_curve(last: float, distance: float) -> None:
+    # The two curves differ in length: a row near the end, as of a mould too short for it, may lie on one of them only.
     curve = dish(0.35)
-    assert gap(curve, table(distance, curve.end * np.array([0.0, 0.5, last]))) < 1e-8
-
-
-@pytest.mark.parametrize("share", [0.3, 0.69, 0.7, 0.71, 0.95])
-def test_a_short_stretch_of_a_curve_under_a_table(share: float) -> None:
-    whole = dish(0.35)
-    rows = whole.end * np.array([0.0, 0.4, 0.7, 0.95])
-    assert gap(whole.part(0.0, share * whole.end), table(-0.8, rows)) < 1e-8
+    rows = table(distance, curve.end * np.array([0.0, 0.5, last]))
+    found = offset_source(curve, rows)
+    back = found.offset(rows(found))
+    where = np.linspace(curve.start, min(curve.end, back.end), 301)
+    assert np.abs(back.points(where) - curve.points(where)).max() < 1e-8 * curve.end
+    assert back.end == pytest.approx(curve.end, rel=1e-8)
 
 
 def test_a_curve_that_starts_off_the_axis() -> None:
@@ -115,7 +113,11 @@ def test_any_size(ratio: float, rim: float, share: float, law: Callable[[float],
 
 class TestRefusals:
     def test_a_sheet_as_thick_as_the_bowl_is_tight(self) -> None:
-        with pytest.raises(GeometryError, match="an offset folds the curve: use a thinner sheet or cover"):
+        with pytest.raises(
+            GeometryError,
+            match=r"an offset of 150 mm at radius \S+ mm folds the curve; allowed: less than its radius of curvature there; "
+            "do: use a thinner sheet or cover",
+        ):
             offset_source(dish(0.25), even(-150.0))
 
     def test_a_thickness_that_changes_faster_than_the_arc_length(self) -> None:
@@ -125,15 +127,17 @@ class TestRefusals:
             (series,) = resolve(lambda where: 3.0 * (where - 50.0)[None], [sought.start, sought.end], sizes=[1.0])
             return series
 
-        with pytest.raises(GeometryError, match="a thickness changes faster than the arc length: check the thickness"):
+        with pytest.raises(
+            GeometryError,
+            match="a thickness changes by 3 mm per mm of the curve; allowed: less than 1; do: check the thickness table",
+        ):
             offset_source(curve, steep)
 
     def test_a_search_that_does_not_settle(self) -> None:
-        # A sheet that is thicker the longer the curve it lies on is, by more than it shortens it: no answer is stable.
-        times = iter(range(10**6))
+        asked = iter(range(10**6))
 
         def restless(sought: Meridian) -> Series:
-            return constant(1.0 + 0.5 * (next(times) % 2), sought.start, sought.end)
+            return constant(1.0 + 0.01 * (next(asked) + 1) ** 2, sought.start, sought.end)
 
         with pytest.raises(
             GeometryError,
@@ -141,14 +145,3 @@ class TestRefusals:
             r"state its thickness by a gentler table",
         ):
             offset_source(dish(0.35), restless)
-
-    def test_a_table_with_a_jump(self) -> None:
-        curve = dish(0.35)
-        middle = 0.5 * curve.end
-
-        def jump(sought: Meridian) -> Series:
-            inner, outer = constant(1.0, sought.start, middle), constant(1.2, middle, sought.end)
-            return Series((*inner.pieces, *outer.pieces))
-
-        with pytest.raises(GeometryError):
-            offset_source(curve, jump)
