@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import numpy as np
 
+from fabricate.blank import blank_of
 from fabricate.chain import Chain
 from fabricate.holes import drilling_outlines, drilling_words
 from fabricate.job_keys import Job
@@ -83,7 +84,7 @@ def drilling_notes(job: Job) -> tuple[str, ...]:
     tuple of str
         One line for each kind of hole; none without holes.
     """
-    return tuple(f"{DRILLING}: {words}; drilled after turning" for words in drilling_words(job))
+    return tuple(f"{DRILLING}: {words}" for words in drilling_words(job))
 
 
 def fit_distance(tolerance: float, units: Units) -> float:
@@ -140,6 +141,7 @@ def _notes(chain: Chain, job: Job) -> tuple[str, ...]:
         "lies on the mould",
         f"mould: {job.mould.material or 'material not stated'}",
         f"rim on the mould: radius {rim:.4f}, {height:.4f} {job.units} over the vertex; {cut}",
+        f"blank: diameter {blank_of(chain).diameter / unit_length(job.units):.2f} {job.units}",
         f"MOULD_CURVE within {job.tolerance.files.chord_error:g} {job.units} of the exact curve, along the normal",
         *feature_words(job.mould, job.units),
     )

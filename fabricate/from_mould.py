@@ -29,7 +29,7 @@ Array = NDArray[np.float64]
 SAMPLES_PER_ARC = 25
 BALL_CENTRES = {"ball-centre", "ball-centres", "ball-center", "ball-centers"}
 ROUNDS = 30
-SAME_FOCUS = 1e-9
+SAME_FOCUS = 1e-6
 SAME_PLACE = 1e-6
 LEAST_SHOWN = 5e-5
 
@@ -104,7 +104,7 @@ def part_of_mould(job: Job, source: Path) -> PartOfMould:
         fit = fitted_face(radius, height)
         mould = _meridian(fit, float(radius.max()))
         part = _settled(in_mm, mould)
-    except GeometryError as error:
+    except (GeometryError, JobError) as error:
         raise JobError(f"{source}: {error}") from error
     wanted, reach = Chain(in_mm), float(part.radius(part.end))
     hole, rim = 0.5 * in_mm.reflector.hole_diameter, 0.5 * in_mm.reflector.rim_diameter
@@ -172,24 +172,33 @@ def _meridian(fit: FittedFace, reach: float) -> Meridian:
 
 
 def _settled(job: Job, mould: Meridian) -> Meridian:
-    """Return the part whose own focal length the law of springback is true for."""
+    """Return the part whose own focal length the law of springback is true for: found by the secant method."""
     focal_length = 0.5 / float(mould.curvature(mould.start))
+    before, lacked = 0.0, 0.0
     for _ in range(ROUNDS):
-        reflector = job.reflector.model_copy(update={"focal_length": focal_length, "depth": None})
-        part = _on_chain(Chain(job.model_copy(update={"reflector": reflector})), mould)
-        bend = float(part.curvature(part.start))
-        if bend <= 0.0:
-            raise GeometryError(
-                "the part springs open past flat; allowed: a mould that the stated springback leaves a bowl; do: check "
-                "the mould's points, or state springback by percent"
-            )
-        if abs(0.5 / bend - focal_length) < SAME_FOCUS * focal_length:
+        part = _of_focal_length(job, mould, focal_length)
+        lacks = 0.5 / float(part.curvature(part.start)) - focal_length
+        if abs(lacks) < SAME_FOCUS * focal_length:
             return part
-        focal_length = 0.5 / bend
+        secant = (focal_length - before) / (lacked - lacks) if before and lacked != lacks else 1.0
+        before, lacked = focal_length, lacks
+        focal_length += lacks * secant if abs(lacks * secant) < 0.5 * focal_length else lacks
     raise GeometryError(
         f"the part's focal length does not settle, last at {focal_length:.6g} mm; allowed: a mould near the reflector "
         "that is wanted; do: state springback by percent"
     )
+
+
+def _of_focal_length(job: Job, mould: Meridian, focal_length: float) -> Meridian:
+    """Return the part where the law is that of a reflector of a given focal length [mm]."""
+    reflector = job.reflector.model_copy(update={"focal_length": focal_length, "depth": None})
+    part = _on_chain(Chain(job.model_copy(update={"reflector": reflector})), mould)
+    if float(part.curvature(part.start)) <= 0.0:
+        raise GeometryError(
+            "the part springs open past flat; allowed: a mould that the stated springback leaves a bowl; do: check the "
+            "mould's points, or state springback by percent"
+        )
+    return part
 
 
 def _on_chain(chain: Chain, mould: Meridian) -> Meridian:

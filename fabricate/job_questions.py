@@ -135,6 +135,16 @@ def _trim_line_of_no_use(job: Job) -> str:
     )
 
 
+def _pilot_through_hole(job: Job) -> str:
+    hub, hole = job.mould.hub, job.reflector.hole_diameter
+    if hub is None or hub.pilot_diameter <= hole:
+        return ""
+    return (
+        f"mould.hub.pilot_diameter is {hub.pilot_diameter:g} and reflector.hole_diameter {hole:g}: the sheet does not "
+        "go over the pilot; is the hole of the blank larger than that of the part?"
+    )
+
+
 _QUESTIONERS: tuple[Callable[[Job], str], ...] = (
     _spun_into_a_cavity,
     _reverse_spindle,
@@ -144,6 +154,7 @@ _QUESTIONERS: tuple[Callable[[Job], str], ...] = (
     _thinning_of_stretched_sheet,
     _thinning_of_another_process,
     _limit_word,
+    _pilot_through_hole,
     _wide_block,
     _nothing_under_block,
     _flat_in_the_face,

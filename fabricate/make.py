@@ -24,7 +24,7 @@ from fabricate.order import (
     TABLE,
     Order,
 )
-from fabricate.part_report import predicted_parts, prediction_json
+from fabricate.part_report import forming_json, predicted_parts, prediction_json
 from fabricate.predicted import PredictedPart
 from fabricate.proof import Proof, prove_files
 from outputs.dxf import Drawing, write_drawing
@@ -109,7 +109,7 @@ def make_package(order: Order, folder: Path, *, replace: bool = False) -> MadePa
         if not proof.passed:
             raise ProofFailedError(proof)
         parts = predicted_parts(order, place)
-        stated = _stated(order, proof) | {"predicted": prediction_json(order, parts)}
+        stated = _stated(order, proof) | {"predicted": prediction_json(order, parts), "forming": forming_json(order)}
         write_file(place / PROOF, json.dumps(stated, indent=1, ensure_ascii=False, allow_nan=False) + "\n")
     return MadePackage(folder, proof, parts)
 

@@ -112,8 +112,9 @@ def _overstretched(order: Order) -> str:
     return (
         f"forming.springback: what is stated {way} the sheet around the axis by {100.0 * abs(strain.largest):.2g} % on "
         f"release, at radius {strain.at_radius / order.unit:.4g} {order.job.units}, and this sheet springs by "
-        f"{100.0 * strain.yield_strain:.2g} % at most (yield over modulus): it was probably never tight on the mould, "
-        "or the model is wrong"
+        f"{100.0 * strain.yield_strain:.2g} % before it yields (yield over modulus, as bought; work-hardened, "
+        "it springs more): beyond that it was probably never tight on the mould, or the model is wrong; measure the "
+        "first part at several radii"
     )
 
 
@@ -138,7 +139,10 @@ def _drilled_later(order: Order) -> str:
     words = drilling_words(order.job)
     if not words or order.job.turning is None:
         return ""
-    return f"drilled after turning, the program does not make them: {'; '.join(words)}"
+    return (
+        f"drilled, not turned: {'; '.join(words)}. Bolt holes come before turning, as the backplate carries the stock; "
+        "air holes after it"
+    )
 
 
 def _wide_air_holes(order: Order) -> str:

@@ -16,7 +16,7 @@ from fabricate.blank import Blank
 from fabricate.drawing import MOULD_CURVE
 from fabricate.hoop_strain import hoop_strain
 from fabricate.order import DRAWING, PROGRAM, Order
-from fabricate.predicted import PredictedPart, predicted_part, sensitivities
+from fabricate.predicted import PredictedPart, Sensitivity, predicted_part, sensitivities
 from fabricate.prove_drawing import layer_path
 from fabricate.rim import rim_of
 from fabricate.shrinkage import shrinkage_conventions
@@ -29,6 +29,9 @@ STATEMENT = (
     "an arithmetic check under the stated springback, thickness and shrinkage; no verdict on a part: measure the first"
 )
 UNIT_NAMES = {"mm": "mm", "inch": "in"}
+
+LEAST_MOVE = 5e-4
+"""A shorter move is none [units of the job]."""
 
 Row = tuple[str, str]
 
@@ -113,13 +116,15 @@ def forming_json(order: Order) -> dict[str, Any]:
     Returns
     -------
     dict
-        ``springback``, ``hoop_strain``, ``blank``, ``rim`` and ``shrinkage``; masses in kg, slopes in degrees.
+        ``units``, ``springback``, ``hoop_strain``, ``blank``, ``rim`` and ``shrinkage``; masses in kg, slopes in
+        degrees.
     """
     chain, unit, blank = order.chain, order.unit, order.blank
     terms, rim, strain, sizes = shop_terms(chain), rim_of(chain), hoop_strain(chain), shrinkage_conventions(chain)
     plain = {"rule", "blank_mass", "part_mass", "tolerance_share", "mean_area_ratio", "draw_ratio"}
     figures = asdict(blank) | {"developed_difference": blank.developed_difference}
     return {
+        "units": order.job.units,
         "springback": {
             "focal_length_percent": terms.focal_length_percent,
             "curvature_percent": terms.curvature_percent,
@@ -196,15 +201,15 @@ def _terms_words(terms: ShopTerms, order: Order) -> str:
     if rows is None:
         return text
     picked = (rows[0], rows[len(rows) // 2], rows[-1])
-    table = ", ".join(f"{percent:.2f} at {_length(radius, order, 1)}" for radius, percent in picked)
-    return f"{text}; as stations in %: {table} (all rows: --json)"
+    table = ", ".join(f"{percent:.2f} % at {_length(radius, order, 1)}" for radius, percent in picked)
+    return f"{text}; as stations, the share of 1/(2f) that is lost at each radius: {table} (all rows: make --json)"
 
 
 def _strain_words(order: Order) -> str:
     strain = hoop_strain(order.chain)
     return (
         f"that release stretches the sheet around the axis by {100.0 * strain.largest:.3f} % at radius "
-        f"{_length(strain.at_radius, order, 2)}; it springs {100.0 * strain.yield_strain:.3f} % at most"
+        f"{_length(strain.at_radius, order, 2)}; before it yields it springs {100.0 * strain.yield_strain:.3f} %"
     )
 
 
@@ -223,7 +228,7 @@ def _thickness_words(blank: Blank, order: Order) -> str:
 
 def _blank_words(blank: Blank, order: Order) -> str:
     by = {
-        "area": "of the formed sheet's area, as it keeps its thickness",
+        "area": "of the reflecting face's area on the mould with its trim, as the sheet keeps its thickness",
         "diameter": "the formed sheet's own diameter, as shear spinning keeps it",
         "volume": "of the formed sheet's volume",
         "clamp": "the clamp's opening and its grip",
@@ -238,8 +243,8 @@ def _blank_words(blank: Blank, order: Order) -> str:
 def _draw_words(blank: Blank, order: Order) -> str:
     return (
         f"{_length(blank.depth_of_draw or 0.0, order, 2)} deep in a clamp opening of "
-        f"{_length(blank.clamp_opening or 0.0, order, 2)}, ratio {blank.draw_ratio:.3f}; the sheet's area grows "
-        f"{blank.mean_area_ratio:.3f} times"
+        f"{_length(blank.clamp_opening or 0.0, order, 2)}, ratio {blank.draw_ratio:.3f}; over the mould's mouth "
+        f"the sheet's area grows {blank.mean_area_ratio:.3f} times"
     )
 
 
@@ -275,15 +280,17 @@ def prediction_rows(order: Order, parts: Mapping[str, PredictedPart]) -> list[Ro
         A row for each file, then one for each cause.
     """
     rows = [(name, _part_words(part, order)) for name, part in parts.items()]
-    for number, moved in enumerate(sensitivities(order.chain)):
-        rows.append(
-            (
-                "" if number else "sensitive to",
-                f"{moved.cause}: focus {_signed(moved.focal_length, order)}, sag at the rim "
-                f"{_signed(moved.rim_sag, order)}, rim diameter {_signed(moved.rim_diameter, order)}",
-            )
-        )
-    return rows
+    moved = [f"{one.cause}: {_moved_words(one, order)}" for one in sensitivities(order.chain)]
+    return [*rows, *(("" if number else "sensitive to", text) for number, text in enumerate(moved))]
+
+
+def _moved_words(moved: Sensitivity, order: Order) -> str:
+    if max(abs(moved.focal_length), abs(moved.rim_sag), abs(moved.rim_diameter)) < LEAST_MOVE * order.unit:
+        return "nothing, as the mirror lies on the mould"
+    return (
+        f"focus {_signed(moved.focal_length, order)}, sag at the rim {_signed(moved.rim_sag, order)}, rim diameter "
+        f"{_signed(moved.rim_diameter, order)}"
+    )
 
 
 def _part_words(part: PredictedPart, order: Order) -> str:
@@ -299,6 +306,6 @@ def _signed(value: float, order: Order) -> str:
     # Nothing is written without a sign: a last digit of rounding is no direction.
     return (
         _length(0.0, order)
-        if abs(value) < 5e-4 * order.unit
+        if abs(value) < LEAST_MOVE * order.unit
         else ("+" if value > 0.0 else "−") + _length(abs(value), order)
     )

