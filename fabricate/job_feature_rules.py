@@ -7,6 +7,9 @@ from collections.abc import Iterator
 from fabricate.job_facts import Facts
 from fabricate.job_findings import Finding
 
+DEEPEST_GROOVE = 0.95
+"""Depth of a groove over its radius: towards a half round its edges stand upright, where no facets can follow."""
+
 
 def _both_or_neither(facts: Facts) -> Iterator[Finding]:
     """Refuse half a pilot and half a groove."""
@@ -51,13 +54,15 @@ def _pilot_of_cavity(facts: Facts) -> Iterator[Finding]:
 
 
 def _groove(facts: Facts) -> Iterator[Finding]:
-    """Refuse a groove that is deeper than its radius or as wide as the lead-out."""
+    """Refuse a groove that is nearly half round or more, or as wide as the lead-out."""
     unit, distance = facts.length_unit, facts["mould.lead_out.distance"]
     radius, depth = facts["mould.lead_out.groove_radius"] or 0.0, facts["mould.lead_out.groove_depth"] or 0.0
     if not radius or not depth or distance is None:
         return
-    if depth > radius:
-        allowed = f"at most groove_radius, {radius:g} {unit}"
+    if depth > DEEPEST_GROOVE * radius:
+        allowed = (
+            f"at most {DEEPEST_GROOVE:g} of groove_radius, {DEEPEST_GROOVE * radius:g} {unit}: its sides stay open"
+        )
         yield Finding("mould.lead_out.groove_depth", f"value is {depth:g} {unit}", allowed, "correct one of them")
         return
     width = 2.0 * (depth * (2.0 * radius - depth)) ** 0.5

@@ -13,6 +13,9 @@ from fabricate.measures import MM_PER_INCH
 _UNITS_OF_WORD = {"G20": "inch", "G70": "inch", "G21": "mm", "G71": "mm"}
 _FEWEST_DECIMALS = {"mm": 3, "inch": 4}
 
+HIGHEST_CUSP = 1.0 / 32.0
+"""Of a cusp over the nose radius: a feed of half the radius leaves it, and a finishing cut takes no more."""
+
 
 def _rim_speed(facts: Facts) -> Iterator[Finding]:
     """Refuse to turn stock that can fly apart, or unnamed stock, without a limit to its rim speed."""
@@ -74,9 +77,10 @@ def _roughness(facts: Facts) -> Iterator[Finding]:
         return
     cusp = asked_cusp(facts)
     nose = facts["turning.nose_radius"] * (MM_PER_INCH if facts.units == "inch" else 1.0)
-    if cusp >= nose:
+    if cusp >= HIGHEST_CUSP * nose:
         problem = f"value is {mean or height:g} um, a cusp {1e3 * cusp:.4g} um high"
-        yield Finding(name, problem, f"cusps lower than the nose radius, {1e3 * nose:g} um", "correct one of them")
+        allowed = f"cusps under {1e3 * HIGHEST_CUSP * nose:.4g} um, for which the feed is half the nose radius"
+        yield Finding(name, problem, allowed, "correct one of them")
     elif cusp:
         wanted, typed = feed_in_units(facts), facts["turning.finishing_feed"]
         if abs(typed - wanted) > 1e-9:

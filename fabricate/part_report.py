@@ -207,8 +207,9 @@ def _terms_words(terms: ShopTerms, order: Order) -> str:
 
 def _strain_words(order: Order) -> str:
     strain = hoop_strain(order.chain)
+    way = "stretches" if strain.largest > 0.0 else "shrinks"
     return (
-        f"that release stretches the sheet around the axis by {100.0 * strain.largest:.3f} % at radius "
+        f"that release {way} the sheet around the axis by {100.0 * abs(strain.largest):.3f} % at radius "
         f"{_length(strain.at_radius, order, 2)}; before it yields it springs {100.0 * strain.yield_strain:.3f} %"
     )
 
@@ -233,8 +234,10 @@ def _blank_words(blank: Blank, order: Order) -> str:
         "volume": "of the formed sheet's volume",
         "clamp": "the clamp's opening and its grip",
     }[blank.rule]
+    forming = order.job.forming
+    more = ", flange and bead included" if forming.flange_width or forming.bead_allowance else ""
     return (
-        f"diameter {_length(blank.diameter, order, 2)}, {by}; the rule of developed length would say "
+        f"diameter {_length(blank.diameter, order, 2)}, {by}{more}; the rule of developed length would say "
         f"{_length(blank.developed_length, order, 2)}, {_length(abs(blank.developed_difference), order, 2)} "
         f"{'more' if blank.developed_difference >= 0.0 else 'less'}, and is not used"
     )

@@ -190,8 +190,8 @@ def sensitivities(chain: Chain) -> tuple[Sensitivity, ...]:
 
 def _causes(chain: Chain) -> tuple[tuple[str, Callable[[Chain], Moved]], ...]:
     sheet = chain.job.sheet
-    stated = f"{sheet.thickness_tolerance:g} mm" if sheet.thickness_tolerance else f"{100.0 * UNKNOWN_TOLERANCE:g} %"
-    thickness = f"a sheet thicker by its tolerance, {stated}" + ("" if sheet.thickness_tolerance else " taken")
+    known = bool(sheet.thickness_tolerance)
+    thickness = "a sheet thicker by its tolerance" if known else f"a sheet {100.0 * UNKNOWN_TOLERANCE:g} % thicker"
     causes = (("one percentage point more of springback", _one_point_more), (thickness, _thicker_sheet))
     if sheet.row.kind == "metal" and not chain.job.forming.shrinkage.percent:
         return causes

@@ -72,7 +72,7 @@ def test_the_finishing_feed_follows_from_the_roughness_asked_for() -> None:
     [
         ("roughness_rt_um = 3.2\nroughness_ra_um = 0.8", "turning.roughness_ra_um: .*one of the two"),
         ("roughness_rt_um = 3.2\nfinishing_feed = 0.2", "turning.finishing_feed: value is 0.2 mm and roughness_rt_um"),
-        ("roughness_rt_um = 500.0\nnose_radius = 0.4", "turning.roughness_rt_um: .*lower than the nose radius"),
+        ("roughness_rt_um = 500.0\nnose_radius = 0.4", "turning.roughness_rt_um: .*cusps under 12.5 um"),
     ],
 )
 def test_a_roughness_that_contradicts_is_refused(lines: str, message: str) -> None:
