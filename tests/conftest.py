@@ -4,5 +4,5 @@ from __future__ import annotations
 
 from hypothesis import settings
 
-settings.register_profile("suite", deadline=None, derandomize=True, max_examples=60)
+settings.register_profile("suite", deadline=None, derandomize=True, max_examples=30)
 settings.load_profile("suite")

@@ -77,7 +77,7 @@ def test_every_demo_job_is_read_and_its_canonical_text_is_a_fixed_point(name: st
     assert job_text(again) == text
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=60, deadline=None)
 @given(st.from_type(Job))
 def test_canonical_text_is_a_fixed_point(job: Job) -> None:
     text = job_text(job)
@@ -86,7 +86,7 @@ def test_canonical_text_is_a_fixed_point(job: Job) -> None:
     assert job_text(again) == text
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(st.from_type(Job))
 def test_a_job_in_millimetres_can_be_read_back_and_is_its_own_conversion(job: Job) -> None:
     metric = job.in_millimetres()
@@ -365,7 +365,7 @@ def test_nothing_is_asked_about_a_plain_job(name: str) -> None:
     assert questions(parse_job(demo(name), name=name)) == ()
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(st.from_type(Job))
 def test_questions_and_rows_answer_for_every_job(job: Job) -> None:
     assert all(sentence.endswith("?") for sentence in questions(job))

@@ -39,7 +39,7 @@ REFUSED = {
     "number of 5000 digits": (HEATER, T1, f"thickness = {'1' * 5000}", "is not a job file"),
     "huge whole number": (HEATER, T1, f"thickness = {'1' * 400}", "sheet.thickness: value is 111"),
     "nested arrays": (HEATER, T1, f"thickness = {'[' * 3000}{']' * 3000}", "is not a job file"),
-    "unknown table": (HEATER, "[turning]", "[machine]\nswing = 500\n[turning]", "machine: unknown key, its value is a table"),
+    "unknown table": (HEATER, "[turning]", "[lathe]\nswing = 500\n[turning]", "lathe: unknown key, its value is a table"),
     "mistyped key": (HEATER, F110, "focal_lenght = 110.0", "nearest known key reflector.focal_length"),
     "key of another table": (HEATER, D400, f"{D400}\ntrim_allowance = 3", "reflector.trim_allowance: unknown key, its value is 3; allowed: nearest known key forming.trim_allowance"),
     # head

@@ -743,7 +743,7 @@ def featured(draw: st.DrawFn) -> str:
     )
 
 
-@settings(max_examples=15, deadline=None, suppress_health_check=[HealthCheck.too_slow])
+@settings(max_examples=6, deadline=None, suppress_health_check=[HealthCheck.too_slow])
 @given(text=featured())
 def test_any_size_gives_a_proved_package_or_a_refusal_in_words(
     text: str, tmp_path_factory: pytest.TempPathFactory

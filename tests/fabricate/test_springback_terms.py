@@ -58,7 +58,7 @@ def _percent(terms: ShopTerms, law: str) -> float:
     return percent
 
 
-@settings(max_examples=12)
+@settings(max_examples=6)
 @given(F_OVER_D, LAWS, PERCENTS)
 def test_each_term_gives_the_others_back(ratio: float, law: str, percent: float) -> None:
     terms = _terms(ratio, law=law, percent=percent)
@@ -73,7 +73,7 @@ def test_each_term_gives_the_others_back(ratio: float, law: str, percent: float)
     assert by_slope.rim_opening == pytest.approx(terms.rim_opening, abs=1e-9)
 
 
-@settings(max_examples=12)
+@settings(max_examples=6)
 @given(F_OVER_D, LAWS, PERCENTS)
 def test_the_table_of_stations_loses_the_same_depth(ratio: float, law: str, percent: float) -> None:
     terms = _terms(ratio, law=law, percent=percent)
@@ -84,7 +84,7 @@ def test_the_table_of_stations_loses_the_same_depth(ratio: float, law: str, perc
     assert _percent(tabled, law) == pytest.approx(percent, abs=1e-9)
 
 
-@settings(max_examples=10)
+@settings(max_examples=5)
 @given(F_OVER_D, st.lists(st.floats(0.2, 4.0), min_size=1, max_size=5), LAWS)
 def test_the_percentage_of_a_table_loses_the_same_depth(ratio: float, percents: list[float], law: str) -> None:
     rows = [[RIM / 2.0 / len(percents) * index, percent] for index, percent in enumerate(percents)]
