@@ -65,19 +65,15 @@ def _strays(chain: Chain, path: ArcPath, clearance: float) -> Series:
         lean = slope + np.arctan2(change(where), 1.0 - face.curvature(where) * thick)
         return points + clearance * np.stack([-np.sin(lean), np.cos(lean)], axis=-1), lean
 
-    def arc_length_under(corner: Array, where: float) -> float:
-        for _ in range(NEWTON_STEPS):
-            point, slope = contact(np.array([where]))
-            step = (corner - point[0]) @ np.array([np.cos(slope[0]), np.sin(slope[0])])
-            where = float(np.clip(where + step, face.start, face.end))
-        return where
-
-    guesses = face.at_radius(np.clip(path.vertices[:, 0], 0.0, float(face.radius(face.end))))
-    joints = [arc_length_under(corner, float(guess)) for corner, guess in zip(path.vertices, guesses, strict=True)]
-    first = joints[0]
+    joints = face.at_radius(np.clip(path.vertices[:, 0], 0.0, float(face.radius(face.end))))
+    for _ in range(NEWTON_STEPS):
+        feet, lean = contact(joints)
+        step = ((path.vertices - feet) * np.stack([np.cos(lean), np.sin(lean)], axis=-1)).sum(axis=1)
+        joints = np.clip(joints + step, face.start, face.end)
+    first = float(joints[0])
     joints[-1] = face.end
     pieces: list[Chebyshev] = []
-    for number, ends in enumerate(pairwise(joints)):
+    for number, ends in enumerate(pairwise(joints.tolist())):
         breaks = np.array([ends[0], *(place for place in shift.breaks if ends[0] < place < ends[1]), ends[1]])
 
         def height(where: Array, number: int = number) -> Array:

@@ -125,7 +125,7 @@ def figures(found: PartOfMould) -> dict[str, Any]:
 # a job's own mould
 
 
-@pytest.mark.parametrize("name", ["terrace-heater", "lamp", "link-dish", "listening-dish", "display-bowl"])
+@pytest.mark.parametrize("name", ["lamp", "listening-dish", "display-bowl"])
 def test_the_own_drawing_of_a_demo_job_makes_its_reflector(name: str, tmp_path: Path) -> None:
     order = demo(name)
     found = part_of_mould(order.job, drawing_of(order, tmp_path / "chuck.dxf"))
@@ -148,10 +148,13 @@ LAWS = [
     {"springback": 'law = "stations"\nstations = [[0.0, 1.0], [100.0, 1.5], [200.0, 0.8]]'},
     {"springback": PERCENT, "conic": 0.0, "focal": 130.0},
     {"springback": PERCENT, "conic": -2.5, "hole": 60.0, "bore": 40.0},
-    {
-        "faces": ("concave", "convex"),
-        "thinning": 'law = "stations"\nstations = [[0.0, 1.5], [120.0, 1.3], [204.0, 1.2]]',
-    },
+    pytest.param(
+        {
+            "faces": ("concave", "convex"),
+            "thinning": 'law = "stations"\nstations = [[0.0, 1.5], [120.0, 1.3], [204.0, 1.2]]',
+        },
+        marks=pytest.mark.slow,
+    ),
 ]
 
 
@@ -177,7 +180,6 @@ def test_readings_of_the_own_mould_make_the_reflector(changes: dict[str, Any], t
         {},
         {"springback": 'law = "curvature"\npercent = 3.0'},
         {"faces": ("concave", "convex"), "springback": 'law = "focal-length"\npercent = -1.5'},
-        {"thinning": 'law = "sine-law"', "faces": ("concave", "convex")},
     ],
 )
 def test_the_chuck_of_another_job_makes_the_reflector_of_that_job(changes: dict[str, Any], tmp_path: Path) -> None:
@@ -233,8 +235,7 @@ def test_a_mould_larger_than_the_part_is_used_as_far_as_the_trim(tmp_path: Path)
 # readings as the bench sends them
 
 
-@pytest.mark.parametrize("side", [1.0, -1.0])
-@pytest.mark.parametrize("faces", [("concave", "concave"), ("concave", "convex")])
+@pytest.mark.parametrize(("side", "faces"), [(1.0, ("concave", "convex")), (-1.0, ("concave", "concave"))])
 def test_readings_may_rise_or_fall_towards_the_rim(side: float, faces: tuple[str, str], tmp_path: Path) -> None:
     asked = job(faces=faces)
     radius, height = on_mould(asked)
@@ -243,7 +244,7 @@ def test_readings_may_rise_or_fall_towards_the_rim(side: float, faces: tuple[str
     assert found.fit.vertex_height == pytest.approx(-42.0 * side, abs=1e-4)
 
 
-@pytest.mark.parametrize("seed", range(3))
+@pytest.mark.parametrize("seed", range(2))
 def test_noise_of_the_bench(seed: int, tmp_path: Path) -> None:
     asked = job()
     radius, height = on_mould(asked)
@@ -281,17 +282,18 @@ def test_readings_in_the_units_they_state_or_those_of_the_job(unit: str, length:
 
 @pytest.mark.parametrize("units", ["mm", "inch"])
 def test_a_drawing_in_the_other_unit(units: Units, tmp_path: Path) -> None:
-    order = demo("terrace-heater")
-    asked = job(units="inch" if units == "mm" else "mm")
+    order = demo("lamp")
+    lamp = {"focal": 12.0, "rim": 60.0, "thickness": 0.8, "trim": 3.0, "springback": 'law = "curvature"\npercent = 1.0'}
+    asked = job(units="inch" if units == "mm" else "mm", **lamp)
     found = part_of_mould(asked, drawing_of(order, tmp_path / "chuck.dxf", units=units))
-    assert found.part.best_focal_length == pytest.approx(110.0, abs=2e-3)
+    assert found.part.best_focal_length == pytest.approx(12.0, abs=4e-3)
 
 
 def test_a_curve_drawn_from_the_rim_inwards(tmp_path: Path) -> None:
-    order = demo("terrace-heater")
+    order = demo("lamp")
     inwards = order.mould.to_lathe(order.forming_arcs.path).reversed()
     found = part_of_mould(order.job, draw(tmp_path / "chuck.dxf", inwards))
-    assert found.part.best_focal_length == pytest.approx(110.0, abs=2e-3)
+    assert found.part.best_focal_length == pytest.approx(12.0, abs=4e-3)
 
 
 # what is refused
@@ -342,11 +344,11 @@ def test_a_drawing_with_two_moulds(tmp_path: Path) -> None:
 
 
 def test_a_drawing_of_both_sides(tmp_path: Path) -> None:
-    order = demo("terrace-heater")
+    order = demo("display-bowl")
     half = order.mould.to_lathe(order.forming_arcs.path)
     left = ArcPath(half.vertices * np.array([-1.0, 1.0]), -half.bulges).reversed()
     message = refusal(order.job, draw(tmp_path / "whole.dxf", left.joined(half)))
-    assert message.startswith("the mould's curve begins at radius -205.1")
+    assert message.startswith("the mould's curve begins at radius -161.8")
     assert "allowed: one side of the axis" in message
 
 
@@ -516,7 +518,7 @@ def test_any_text_is_answered_or_refused(tmp_path_factory: pytest.TempPathFactor
     json.dumps(figures(found), allow_nan=False)
 
 
-@settings(max_examples=8)
+@settings(max_examples=5)
 @given(
     focal=st.floats(40.0, 3000.0),
     reach=st.floats(20.0, 500.0),

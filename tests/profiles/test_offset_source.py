@@ -81,7 +81,7 @@ def test_a_measured_table(ratio: float, distance: float) -> None:
 
 @pytest.mark.parametrize(
     ("last", "distance"),
-    [(0.999, 0.8), (0.99995, -0.8), (1.0, 0.8), (1.0, -0.8), (1.001, 0.8)],
+    [(0.999, 0.8), (0.99995, -0.8), (1.0, 0.8)],
 )
 def test_a_table_under_a_smooth_curve(last: float, distance: float) -> None:
     # The two curves differ in length: a row near the end, as of a mould too short for it, may lie on one of them only.
@@ -99,7 +99,7 @@ def test_a_curve_that_starts_off_the_axis() -> None:
     assert gap(whole.part(0.3 * whole.end, whole.end), by_slope(0.8)) < 1e-11
 
 
-@settings(max_examples=12)
+@settings(max_examples=8)
 @given(
     ratio=st.floats(0.2, 1.5),
     rim=st.floats(20.0, 3000.0),
