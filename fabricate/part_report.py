@@ -289,7 +289,13 @@ def prediction_rows(order: Order, parts: Mapping[str, PredictedPart]) -> list[Ro
 
 def _moved_words(moved: Sensitivity, order: Order) -> str:
     if max(abs(moved.focal_length), abs(moved.rim_sag), abs(moved.rim_diameter)) < LEAST_MOVE * order.unit:
-        return "nothing, as the mirror lies on the mould"
+        job = order.job
+        on_mould = moved.cause.startswith("a sheet") and job.forming.contact_face == job.reflector.reflecting_face
+        return (
+            "nothing, as the mirror lies on the mould"
+            if on_mould
+            else f"less than {_length(LEAST_MOVE * order.unit, order, 4)}"
+        )
     return (
         f"focus {_signed(moved.focal_length, order)}, sag at the rim {_signed(moved.rim_sag, order)}, rim diameter "
         f"{_signed(moved.rim_diameter, order)}"
